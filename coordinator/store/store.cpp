@@ -1,0 +1,1 @@
+#include "coordinator/store/store.hpp"

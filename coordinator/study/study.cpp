@@ -1,0 +1,1 @@
+#include "coordinator/study/study.hpp"

@@ -1,0 +1,1 @@
+#include "proto/points.hpp"

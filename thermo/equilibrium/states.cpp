@@ -1,0 +1,1 @@
+#include "thermo/equilibrium/states.hpp"

@@ -1,0 +1,1 @@
+#include "thermo/fluids/library.hpp"

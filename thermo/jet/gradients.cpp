@@ -1,0 +1,1 @@
+#include "thermo/jet/gradients.hpp"

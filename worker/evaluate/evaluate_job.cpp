@@ -1,0 +1,1 @@
+#include "worker/evaluate/evaluate_job.hpp"
