@@ -6,7 +6,6 @@
 #pragma once
 
 #include <cstdint>
-#include <functional>
 #include <vector>
 
 #include "holdfast.pb.h"
@@ -22,7 +21,8 @@ struct Run {
   std::uint64_t points = 0;
 };
 
-/// Immutable view of a plan's numbering. Keeps a reference to the plan, which must outlive it.
+/// Immutable view of a plan's numbering. Keeps a reference to the plan, which must outlive it. Counts that do
+/// not fit into 64 bits stay at the largest number; a plan whose axes have no values has no points.
 class Points {
  public:
   explicit Points(const v1::Plan& plan);
@@ -32,13 +32,14 @@ class Points {
   std::uint64_t compositionsOf(std::uint32_t candidate) const;
   std::uint64_t perComposition() const;  ///< product of the axes' counts
 
-  /// Cuts [first, first + points) where the composition changes.
+  /// Cuts [first, first + points) where the composition changes. What lies beyond the last point is left out.
   std::vector<Run> runs(std::uint64_t first, std::uint64_t points) const;
 
-  /// SI values of axis `axis` at point numbers first.. (points of them), into out.
+  /// SI values of axis `axis` at point numbers first.. (points of them, all inside the plan), into out.
   void axisValues(int axis, std::uint64_t first, std::uint64_t points, double* out) const;
 
-  /// Mole fractions of a composition of a candidate (lattice by mass converted with the plan's molar masses).
+  /// Mole fractions of a composition of a candidate (lattice by mass converted with the plan's molar masses);
+  /// 0 <= composition_of_candidate < compositionsOf(candidate).
   std::vector<double> moleFractions(std::uint32_t candidate, std::uint64_t composition_of_candidate) const;
 
  private:
