@@ -161,12 +161,9 @@ Axes readAxes(const std::vector<Section>& sections, v1::Basis basis, Findings& f
       axes.planned.push_back(std::move(*axis));
       axes.places.push_back(place);
     }
-  if (sections.size() != 2)
-    findings.report(sections.empty()      ? Place{}
-                    : sections.size() > 2 ? sections[2].place()
-                                          : sections[0].place(),
-                    std::string(kPairs) + "; this study has " +
-                        (sections.empty() ? "no [[axis]]" : std::to_string(sections.size())));
+  if (sections.size() != 2 && !sections.empty())
+    findings.report(sections[sections.size() > 2 ? 2 : 0].place(),
+                    std::string(kPairs) + "; this study has " + std::to_string(sections.size()));
   else if (axes.planned.size() == 2 && axes.planned[0].quantity() != axes.planned[1].quantity() &&
            !isPair(axes.planned[0].quantity(), axes.planned[1].quantity()))
     findings.report(axes.places[1], std::string(kPairs) + "; not " + axes.planned[0].quantity() + "," +

@@ -39,8 +39,9 @@ std::string identityOf(const v1::Plan& plan, const thermo::FluidLibrary& library
   what_counts.clear_title();
   // Each part goes in with its length before it: no two different triples give the same bytes.
   std::string bytes;
+  const std::string plan_bytes = deterministicBytes(what_counts);
   for (const std::string_view part :
-       {std::string_view(library.digest()), build, std::string_view(deterministicBytes(what_counts))})
+       {std::string_view(library.digest()), build, std::string_view(plan_bytes)})
     bytes.append(std::to_string(part.size())).append(":").append(part);
   std::array<unsigned char, EVP_MAX_MD_SIZE> digest{};
   unsigned int length = 0;

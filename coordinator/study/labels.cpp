@@ -19,8 +19,7 @@ std::string perCent(double fraction, Detail detail) {
   return shown;
 }
 
-/// What a blend is made of: "R-32/R-1234yf (68.9/31.1)", the form of ISO 817, by mass. `name` is the one it
-/// was given in the study, if any.
+/// What a candidate is made of: "R-32/R-1234yf (68.9/31.1)", the form of ISO 817, by mass.
 std::string describe(const v1::PlannedCandidate& candidate, Detail detail) {
   std::string components, per_cent;
   double mass = 0;
@@ -62,11 +61,11 @@ void giveLabels(std::vector<v1::PlannedCandidate>& candidates) {
   forRepeated(candidates, [](auto& alike) {
     if (!equationsDiffer(alike)) return;
     for (auto* const candidate : alike)
-      candidate->set_label(candidate->label() + " by " + candidate->equation());
+      candidate->set_label(candidate->label() + ", " + candidate->equation());
   });
   forRepeated(candidates, [](auto& alike) {
     for (auto* const candidate : alike)
-      candidate->set_label(describe(*candidate, Detail::full) + " by " + candidate->equation());
+      candidate->set_label(describe(*candidate, Detail::full) + ", " + candidate->equation());
   });
   forRepeated(candidates, [](auto& alike) {
     int number = 0;

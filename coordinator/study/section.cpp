@@ -168,6 +168,7 @@ std::vector<Section> Section::sections(std::string_view key, Words keys) const {
     findings_.report(placeOf(node->source()), inQuotes(key) + " is written with two brackets: " + title);
     return found;
   }
+  if (array->empty()) findings_.report(placeOf(node->source()), inQuotes(key) + " is an empty list");
   for (const toml::node& element : *array) {
     const Place place = placeOf(element.source());
     if (const auto* const table = element.as_table())

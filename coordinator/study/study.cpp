@@ -96,6 +96,8 @@ v1::Plan readPlan(const Section& study, const thermo::FluidLibrary& library, con
   const auto equation = study.choice("equation", kEquations);
   *plan.mutable_reference_state() = readReferenceState(study);
 
+  if (!study.has("candidate")) findings.report({}, "a study has at least one [[candidate]]");
+  if (!study.has("axis")) findings.report({}, "a study has two axes, each an [[axis]]");
   const Candidates candidates = readCandidates(study.sections("candidate", kCandidateKeys),
                                                equation ? equation->value : "reference", library, findings);
   const Axes axes = readAxes(study.sections("axis", kAxisKeys), plan.basis(), findings);

@@ -60,7 +60,8 @@ std::string suggestion(std::string_view word, std::span<const std::string_view> 
   constexpr std::size_t kLongest = 64;  // nothing that can be chosen is longer
   if (word.size() > kLongest) return {};
   std::string_view nearest;
-  std::size_t least = std::max<std::size_t>(1, word.size() / 3) + 1;
+  // Near: a third of the letters differ, and not all of them.
+  std::size_t least = word.empty() ? 0 : std::min((word.size() + 2) / 3, word.size() - 1) + 1;
   for (const std::string_view choice : choices)
     if (const std::size_t d = distance(word, choice); d < least) {
       least = d;
