@@ -10,9 +10,11 @@
 #include <memory>
 #include <span>
 #include <string>
+#include <string_view>
 #include <vector>
 
 #include "holdfast.pb.h"
+#include "thermo/equilibrium/reference_state.hpp"
 #include "thermo/fluids/library.hpp"
 #include "thermo/result.hpp"
 
@@ -42,8 +44,21 @@ struct StudyRecord {
   std::uint64_t points_done = 0;
 };
 
-/// A finished job on its way into the store. `result` is as it came over the wire, already checked against
-/// the plan.
+/// What is known of a candidate only after it was built (thermo::Candidate).
+struct CandidateFacts {
+  std::string data_kind;                              ///< where the data of its pairs come from
+  std::vector<thermo::ReferenceUsed> reference_used;  ///< one a component
+};
+
+/// Studies whose jobs one call of Store::land may carry.
+inline constexpr std::size_t kMostStudiesOfLanding = 8;
+
+/// Whether a result can be the answer to a job of this plan: sizes, codes, no value at a point that has no
+/// numbers, every value finite. Pure: a service calls it when a result arrives, to know whom to blame;
+/// Store::land relies on nobody and checks again.
+Status checkResult(const v1::Plan& plan, const v1::JobResult& result);
+
+/// A finished job on its way into the store. `result` is as it came over the wire, see checkResult.
 struct FinishedJob {
   std::int64_t study = 0;
   const v1::JobResult* result = nullptr;
@@ -63,17 +78,26 @@ class Store {
   ~Store();
 
   /// Records a new study with its candidates, compositions, columns, fluids and all its jobs (waiting), in
-  /// one transaction, and makes its points table and view. Fails if the name is taken.
+  /// one transaction, and makes its points table and view. Fails if the name is taken. `facts`: one a
+  /// candidate of the plan.
   Result<StudyRecord> add(const v1::Plan& plan, std::string_view identity, std::string_view text,
-                          std::string_view version, const thermo::FluidLibrary& library);
+                          std::string_view version, const thermo::FluidLibrary& library,
+                          std::span<const CandidateFacts> facts);
   /// Removes a study and everything of it.
   Status drop(std::string_view name);
 
+  /// How often this store was opened, this time included: makes numbers of leases unique over its life.
+  std::uint64_t openings() const;
+
   Result<std::vector<StudyRecord>> studies();
+  /// In order of first_point. The ledger knows waiting, committed and failed; what is leased or returned is
+  /// known to the coordinator's memory alone, so after any end of the program it waits.
   Result<std::vector<JobRecord>> jobs(std::int64_t study);
 
   /// Lands whole jobs in one transaction: rows, absences, and the committed mark. When it returns success,
-  /// COMMIT is done.
+  /// COMMIT is done and on the disk: neither SIGKILL nor a power failure takes it back. All or none: on an
+  /// Error (a result that does not fit, a job that is committed already, a full disk) nothing of this call
+  /// is in the store. Jobs of at most kMostStudiesOfLanding studies, less than 1 GiB of rows a study.
   Status land(std::span<const FinishedJob> jobs);
 
   Status setState(std::int64_t study, StudyState state);
