@@ -140,10 +140,10 @@ Result<Asked> read(const v1::EvaluateRequest& request, CandidateCache& candidate
   spec.equation = *equation;
   if (request.has_reference_state()) {
     const v1::ReferenceState& state = request.reference_state();
-    if (!(state.T() > 0) || !std::isfinite(state.T()) || !std::isfinite(state.h()) ||
+    if (!(state.t() > 0) || !std::isfinite(state.t()) || !std::isfinite(state.h()) ||
         !std::isfinite(state.s()))
       return Error{"reference_state: T must be above 0 K, h and s finite"};
-    spec.reference_state = {state.T(), state.h(), state.s()};
+    spec.reference_state = {state.t(), state.h(), state.s()};
   }
   auto candidate = candidates.get(spec);
   if (!candidate.ok()) return candidate.error();
@@ -155,13 +155,15 @@ Result<Asked> read(const v1::EvaluateRequest& request, CandidateCache& candidate
 
 /// Where tiles write: every tile its own rows, so that they may be computed side by side.
 struct Answer {
+  std::vector<double> values;            ///< [state * columns + column]
   std::vector<unsigned char> present;    ///< [state * columns + column]
   std::vector<thermo::Absence> absence;  ///< [tile * columns + column]: the first one of the tile
   std::vector<thermo::Reason> reason;    ///< [state]
+  std::string phase, outcome;            ///< [state]
 };
 
 void evaluateTile(const v1::EvaluateRequest& request, const Asked& asked, const thermo::Evaluator& evaluator,
-                  std::size_t tile, Answer& answer, v1::EvaluateReply& reply) {
+                  std::size_t tile, Answer& answer) {
   const std::size_t first = tile * kTile;
   const std::size_t columns = asked.columns.size();
   thermo::InputTile input;
@@ -180,8 +182,8 @@ void evaluateTile(const v1::EvaluateRequest& request, const Asked& asked, const 
   for (int k = 0; k < input.count; ++k) {
     const auto lane = static_cast<std::size_t>(k);
     const std::size_t state = first + lane;
-    (*reply.mutable_phase())[state] = static_cast<char>(out.phase[lane]);
-    (*reply.mutable_outcome())[state] = static_cast<char>(out.outcome[lane]);
+    answer.phase[state] = static_cast<char>(out.phase[lane]);
+    answer.outcome[state] = static_cast<char>(out.outcome[lane]);
     answer.reason[state] = out.reason[lane];
     const bool has_numbers =
         out.outcome[lane] == thermo::Outcome::ok || out.outcome[lane] == thermo::Outcome::extrapolated;
@@ -189,7 +191,7 @@ void evaluateTile(const v1::EvaluateRequest& request, const Asked& asked, const 
     for (std::size_t c = 0; c < columns; ++c) {
       const thermo::Absence absence = out.columns.reason[c][lane];
       if (absence == thermo::Absence::none) {
-        reply.mutable_values()->Set(static_cast<int>(state * columns + c), out.columns.value[c][k]);
+        answer.values[state * columns + c] = out.columns.value[c][k];
         answer.present[state * columns + c] = 1;
       } else if (answer.absence[tile * columns + c] == thermo::Absence::none) {
         answer.absence[tile * columns + c] = absence;
@@ -207,22 +209,24 @@ Result<v1::EvaluateReply> evaluateRequest(const v1::EvaluateRequest& request, Ca
   const std::size_t columns = asked.columns.size();
   const std::size_t tiles = (asked.states + kTile - 1) / kTile;
 
-  v1::EvaluateReply reply;
-  reply.mutable_values()->Resize(static_cast<int>(asked.states * columns), 0.0);
-  reply.mutable_phase()->resize(asked.states);
-  reply.mutable_outcome()->resize(asked.states);
-  Answer answer{std::vector<unsigned char>(asked.states * columns),
+  Answer answer{std::vector<double>(asked.states * columns),
+                std::vector<unsigned char>(asked.states * columns),
                 std::vector<thermo::Absence>(tiles * columns, thermo::Absence::none),
-                std::vector<thermo::Reason>(asked.states, thermo::Reason::none)};
+                std::vector<thermo::Reason>(asked.states, thermo::Reason::none),
+                std::string(asked.states, '\0'),
+                std::string(asked.states, '\0')};
   const thermo::Evaluator evaluator(asked.candidate, asked.columns, asked.basis, asked.beyond);
   if (tiles == 1) {
-    evaluateTile(request, asked, evaluator, 0, answer, reply);
+    evaluateTile(request, asked, evaluator, 0, answer);
   } else {
-    tbb::parallel_for(std::size_t{0}, tiles, [&](std::size_t tile) {
-      evaluateTile(request, asked, evaluator, tile, answer, reply);
-    });
+    tbb::parallel_for(std::size_t{0}, tiles,
+                      [&](std::size_t tile) { evaluateTile(request, asked, evaluator, tile, answer); });
   }
 
+  v1::EvaluateReply reply;
+  reply.mutable_values()->Add(answer.values.begin(), answer.values.end());
+  reply.set_phase(std::move(answer.phase));
+  reply.set_outcome(std::move(answer.outcome));
   std::string& presence = *reply.mutable_presence();
   presence.assign((answer.present.size() + 7) / 8, '\0');
   for (std::size_t i = 0; i < answer.present.size(); ++i)
