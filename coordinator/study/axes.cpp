@@ -153,7 +153,8 @@ bool Axes::sweeps(std::string_view quantity) const {
 Axes readAxes(const std::vector<Section>& sections, v1::Basis basis, Findings& findings) {
   constexpr std::string_view kPairs = "a state is given by two axes: T,p | T,rho | T,beta | p,beta";
   Axes axes;
-  for (const Section& section : sections)
+  for (const Section& section : sections) {
+    if (axes.planned.size() == kSweepable.size()) break;  // more are a mistake anyway
     if (auto axis = readAxis(section, basis, findings)) {
       const Place place = section.placeOfValue("quantity");
       if (axes.sweeps(axis->quantity()))
@@ -161,6 +162,7 @@ Axes readAxes(const std::vector<Section>& sections, v1::Basis basis, Findings& f
       axes.planned.push_back(std::move(*axis));
       axes.places.push_back(place);
     }
+  }
   if (sections.size() != 2 && !sections.empty())
     findings.report(sections[sections.size() > 2 ? 2 : 0].place(),
                     std::string(kPairs) + "; this study has " + std::to_string(sections.size()));

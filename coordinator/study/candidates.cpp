@@ -188,6 +188,7 @@ class CandidateReader {
 /// What makes two candidates the same: equation, lattice, and parts in whatever order.
 std::string sameness(const v1::PlannedCandidate& candidate) {
   std::vector<std::pair<std::string, double>> parts;
+  parts.reserve(static_cast<std::size_t>(candidate.components_size()));
   for (int i = 0; i < candidate.components_size(); ++i)
     parts.emplace_back(candidate.components(i),
                        candidate.has_fixed() ? candidate.fixed().mole_fraction(i) : 0);

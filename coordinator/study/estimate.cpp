@@ -42,7 +42,8 @@ std::uint64_t varintBytes(std::uint64_t number) {
 /// Bytes of the points table: leaf pages of 4096 bytes, each with 8 bytes of header and 2 bytes a cell.
 double tableBytes(const v1::Plan& plan, std::uint64_t compositions) {
   constexpr std::uint64_t kPage = 4096, kPageHeader = 8, kCellPointer = 2;
-  const auto reals = static_cast<std::uint64_t>(plan.axes_size() + plan.columns_size());
+  const auto reals =
+      static_cast<std::uint64_t>(plan.axes_size()) + static_cast<std::uint64_t>(plan.columns_size());
   const std::uint64_t integers = 4;  // point, composition, phase, outcome: a byte of type each
   const std::uint64_t header = integers + reals + varintBytes(integers + reals + 1);
   const std::uint64_t payload =

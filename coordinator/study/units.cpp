@@ -103,7 +103,7 @@ Result<double> parseQuantity(std::string_view text, std::string_view si_unit) {
     return Error{
         inQuotes(text) + " has " + inQuotes(rest.substr(0, 1)) +
         " where a unit should begin (a number has a decimal point and no blanks or thousands marks)"};
-  const auto value = convert(text, number, std::string(rest), si_unit);
+  auto value = convert(text, number, std::string(rest), si_unit);
   if (value && !std::isfinite(*value)) return Error{"the number in " + inQuotes(text) + " is too large"};
   return value;
 }

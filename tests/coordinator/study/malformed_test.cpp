@@ -214,6 +214,19 @@ TEST(MalformedStudies, OfTheFileAsAWholeHaveNoPlace) {
             "x.toml: error: a study says what to collect: [collect] with quantities and partials\n");
 }
 
+TEST(MalformedStudies, NestedWithoutEndAreRefused) {
+  const auto reading = readStudy("x", "title = " + std::string(100'000, '['), library(), StudyLimits{});
+  ASSERT_EQ(reading.diagnostics.size(), 1u);
+  EXPECT_EQ(reading.diagnostics[0].line, 1);
+}
+
+TEST(MalformedStudies, OfThousandsOfLongAxesAreRefusedAtOnce) {
+  std::string axes;
+  for (int i = 0; i < 10'000; ++i)
+    axes += "[[axis]]\nquantity = \"T\"\nfrom = 300\nto = 400\ncount = 100000\n";
+  EXPECT_FALSE(readStudy("x", kFluid + axes + kCollect, library(), StudyLimits{}).plan.has_value());
+}
+
 TEST(MalformedStudies, LongerThanAMebibyteAreNotRead) {
   const auto reading = readStudy("x", std::string(1024 * 1024 + 1, '#'), library(), StudyLimits{});
   ASSERT_EQ(reading.diagnostics.size(), 1u);
