@@ -8,12 +8,12 @@ SELECT label, equation, data_kind FROM candidate ORDER BY id;
 SELECT candidate, outcome, coalesce(phase, '-') AS phase, count(*) AS points FROM freezer_blends GROUP BY 1, 2, 3 ORDER BY 1, 4 DESC;
 
 -- Compositions in words: "R-290 60 %, R-600a 40 %" by mole.
-CREATE TEMP VIEW in_words AS
+CREATE TEMP TABLE in_words AS
 SELECT composition, group_concat(fluid || ' ' || round(100 * z) || ' %', ', ') AS blend
 FROM (SELECT composition, fluid, z FROM composition_part WHERE z > 0 ORDER BY composition, ordinal) GROUP BY composition;
 
 -- Volumetric cooling effect, suction at -10 degC and 1 bar, liquid at 24 degC and 15 bar: rho (h_suction - h_liquid).
-CREATE TEMP VIEW cooling AS
+CREATE TEMP TABLE cooling AS
 SELECT suction.composition, suction.rho AS rho, suction.h - liquid.h AS effect, suction.rho * (suction.h - liquid.h) AS per_volume,
        suction.w * suction.w * suction.rho / suction.p AS exponent, suction.dT_dp_at_s * 1e5 AS K_per_bar,
        100 * suction.drho_dT_at_p / suction.rho AS per_cent_per_K, 1e3 * suction.drho_dp_at_T / suction.rho * 100 AS per_cent_per_kPa

@@ -9,12 +9,12 @@ SELECT column_name, written_as, meaning, unit FROM quantity ORDER BY rowid;
 SELECT round(p / 1e5, 2) AS p_bar, round(T - 273.15, 1) AS T_degC, round(rho, 1) AS rho_kg_m3,
        round(max(-drho_dT_at_p), 1) AS fall_kg_m3_per_K, round(cp / 1e3, 1) AS cp_kJ_kgK
 FROM sco2_inlet WHERE p > 74e5 AND phase = 'supercritical'
-GROUP BY p HAVING round(p / 1e5, 2) % 4 = 0 ORDER BY p;
+GROUP BY p HAVING round(p / 2.5e4) % 16 = 0 ORDER BY p;
 
 -- 3. The same for cp: near the critical point both ridges run together, above they part.
 SELECT round(p / 1e5, 2) AS p_bar, round(T - 273.15, 1) AS T_degC, round(max(cp) / 1e3, 2) AS cp_kJ_kgK, round(rho, 1) AS rho_kg_m3
 FROM sco2_inlet WHERE p > 74e5
-GROUP BY p HAVING round(p / 1e5, 2) % 4 = 0 ORDER BY p;
+GROUP BY p HAVING round(p / 2.5e4) % 16 = 0 ORDER BY p;
 
 -- 4. Where an inlet is calm: per pressure, the coolest temperature above the ridge at which one kelvin moves density by less
 --    than 2 %.
@@ -32,7 +32,7 @@ FROM sco2_inlet ORDER BY abs(T - 308.15) + abs(p - 85e5) / 1e5 LIMIT 1;
 
 -- 6. Work of the first bar of compression (kJ/kg) at 85 bar: cool and dense against warm and light.
 SELECT round(T - 273.15, 1) AS T_degC, round(dh_dp_at_s * 1e5 / 1e3, 4) AS kJ_per_kg_and_bar, round(dT_dp_at_s * 1e5, 3) AS K_per_bar
-FROM sco2_inlet WHERE round(p / 1e5, 2) = 85 AND round(T - 273.15, 1) % 5 = 0 ORDER BY T;
+FROM sco2_inlet WHERE round(p / 1e5, 2) = 85 AND round((T - 273.15) * 5) % 25 = 0 ORDER BY T;
 
 -- 7. What became of the points.
 SELECT outcome, phase, count(*) AS points FROM sco2_inlet GROUP BY outcome, phase ORDER BY points DESC;

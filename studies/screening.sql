@@ -1,13 +1,14 @@
 -- Questions to the store of studies/screening.toml:   sqlite3 -box screening.sqlite < studies/screening.sql
 -- Safety classes and cautions are the catalogue's; local codes and licensed practice decide what may be used where.
 
--- Liquid and vapour of a fluid at one temperature side by side, with what the catalogue knows of the fluid.
-CREATE TEMP VIEW saturated AS
+-- Liquid and vapour of a fluid at one temperature side by side, with what the catalogue knows of the fluid. beta is the last axis:
+-- the liquid's point stands just before the vapour's.
+CREATE TEMP TABLE saturated AS
 SELECT vapour.candidate AS fluid, vapour.T AS T, vapour.p AS p, vapour.h - liquid.h AS latent, vapour.rho AS rho,
        vapour.rho * (vapour.h - liquid.h) AS per_volume, vapour.dp_dT_at_sat AS dp_dT, vapour.ds_vap_dT_at_sat AS ds_dT,
        coalesce(safety_class, '-') AS safety_class, fluid.gwp100 AS gwp100, caution
 FROM screening AS vapour
-JOIN screening AS liquid ON liquid.candidate = vapour.candidate AND liquid.T = vapour.T AND liquid.beta = 0
+JOIN screening AS liquid ON liquid.point = vapour.point - 1
 JOIN fluid ON vapour.candidate IN (fluid.designation, fluid.name)
 WHERE vapour.beta = 1 AND vapour.rho IS NOT NULL AND liquid.rho IS NOT NULL;
 

@@ -157,8 +157,10 @@ Axes readAxes(const std::vector<Section>& sections, v1::Basis basis, Findings& f
     if (axes.planned.size() == kSweepable.size()) break;  // more are a mistake anyway
     if (auto axis = readAxis(section, basis, findings)) {
       const Place place = section.placeOfValue("quantity");
-      if (axes.sweeps(axis->quantity()))
+      if (axes.sweeps(axis->quantity())) {
         findings.report(place, "there is an axis of " + axis->quantity() + " already");
+        continue;
+      }
       axes.planned.push_back(std::move(*axis));
       axes.places.push_back(place);
     }
@@ -166,8 +168,7 @@ Axes readAxes(const std::vector<Section>& sections, v1::Basis basis, Findings& f
   if (sections.size() != 2 && !sections.empty())
     findings.report(sections[sections.size() > 2 ? 2 : 0].place(),
                     std::string(kPairs) + "; this study has " + std::to_string(sections.size()));
-  else if (axes.planned.size() == 2 && axes.planned[0].quantity() != axes.planned[1].quantity() &&
-           !isPair(axes.planned[0].quantity(), axes.planned[1].quantity()))
+  else if (axes.planned.size() == 2 && !isPair(axes.planned[0].quantity(), axes.planned[1].quantity()))
     findings.report(axes.places[1], std::string(kPairs) + "; not " + axes.planned[0].quantity() + "," +
                                         axes.planned[1].quantity());
   return axes;

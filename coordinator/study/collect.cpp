@@ -1,7 +1,6 @@
 #include "coordinator/study/collect.hpp"
 
 #include <algorithm>
-#include <cctype>
 #include <map>
 #include <utility>
 #include <variant>
@@ -16,11 +15,6 @@ struct Column {
   thermo::ColumnExpression expression;
   Place place;
 };
-
-bool equalIgnoringCase(std::string_view a, std::string_view b) {
-  return std::equal(a.begin(), a.end(), b.begin(), b.end(),
-                    [](unsigned char x, unsigned char y) { return std::tolower(x) == std::tolower(y); });
-}
 
 class ColumnReader {
  public:
@@ -52,7 +46,11 @@ class ColumnReader {
                                           std::to_string(first->second.line) + ")");
       return;
     }
-    if (isInEveryRow(expression, written)) return;
+    if (axes_.sweeps(expression.written_as)) {
+      findings_.report(written.place,
+                       inQuotes(expression.written_as) + " is an axis: it stands in every row anyway");
+      return;
+    }
     columns_.push_back({std::move(expression), written.place});
     reportClash();
   }
@@ -85,33 +83,17 @@ class ColumnReader {
     return true;
   }
 
-  bool isInEveryRow(const thermo::ColumnExpression& expression, const PlacedText& written) {
-    const std::string& text = expression.written_as;
-    if (axes_.sweeps(text)) {
-      findings_.report(written.place, inQuotes(text) + " is an axis: it stands in every row anyway");
-      return true;
-    }
-    if (text == "M") {
-      findings_.report(written.place, "\"M\" stands in every row of the study's view anyway");
-      return true;
-    }
-    return false;
-  }
-
-  /// Takes the last column out again if its name in the store is taken.
+  /// Takes the last column out again if its name in the store is taken. The axes have columns there too.
   void reportClash() {
     std::vector<thermo::ColumnExpression> expressions;
+    for (const v1::PlannedAxis& axis : axes_.planned)
+      if (auto parsed = thermo::parseColumn(axis.quantity());
+          std::holds_alternative<thermo::ColumnExpression>(parsed))
+        expressions.push_back(std::get<thermo::ColumnExpression>(std::move(parsed)));
     for (const Column& column : columns_) expressions.push_back(column.expression);
     const auto names = thermo::columnNames(expressions);
-    std::string message = names ? std::string() : names.error().message;
-    if (names)
-      for (const std::string_view taken :
-           {"point", "composition", "candidate", "phase", "outcome", "M", "gwp100"})
-        if (equalIgnoringCase(names->back(), taken))
-          message = "the column " + inQuotes(names->back()) + " would clash with the store's own " +
-                    inQuotes(taken);
-    if (message.empty()) return;
-    findings_.report(columns_.back().place, message);
+    if (names) return;
+    findings_.report(columns_.back().place, names.error().message);
     columns_.pop_back();
   }
 

@@ -30,10 +30,10 @@ TEST(Estimate, CountsRowsAndJobs) {
 }
 
 TEST(Estimate, OfBytesFollowsSQLitesRecordFormat) {
-  // 10 000 rows of 2 + 30 REAL: header 1 + 4 + 32 bytes; data 2 (point) + 1 (composition) + 1 + 1 + 256; the
-  // cell has 2 bytes of payload length, 2 of rowid and 2 of pointer: 304 bytes, 13 to a page of 4096 with its
-  // header of 8.
-  EXPECT_EQ(estimate(sweep(100, 100, 30), 1).bytes, 770.0 * 4096);
+  // 10 000 rows of 2 + 30 REAL: header 1 + 4 + 32 bytes; data 0 (the key) + 1 (composition) + 1 + 1 + 256;
+  // the cell has 2 bytes of payload length, 2 of rowid and 2 of pointer: 302 bytes, 108 to a page of 32768
+  // with its header of 8.
+  EXPECT_EQ(estimate(sweep(100, 100, 30), 1).bytes, 93.0 * 32768);
 }
 
 TEST(Estimate, GrowsWithPointsAndColumnsAndShrinksWithThreads) {
