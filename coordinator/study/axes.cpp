@@ -153,8 +153,9 @@ bool Axes::sweeps(std::string_view quantity) const {
 Axes readAxes(const std::vector<Section>& sections, v1::Basis basis, Findings& findings) {
   constexpr std::string_view kPairs = "a state is given by two axes: T,p | T,rho | T,beta | p,beta";
   Axes axes;
-  for (const Section& section : sections) {
-    if (axes.planned.size() == kSweepable.size()) break;  // more are a mistake anyway
+  for (std::size_t i = 0; i < std::min(sections.size(), kSweepable.size());
+       ++i) {  // more are a mistake anyway
+    const Section& section = sections[i];
     if (auto axis = readAxis(section, basis, findings)) {
       const Place place = section.placeOfValue("quantity");
       if (axes.sweeps(axis->quantity())) {
