@@ -1,4 +1,4 @@
--- Questions to the store of studies/freezer_blends.toml:   sqlite3 -box freezer_blends.sqlite < studies/freezer_blends.sql
+-- Questions to the store of studies/freezer_blends.toml, with this study alone in it:   sqlite3 -box freezer_blends.sqlite < studies/freezer_blends.sql
 -- The hydrocarbons are highly flammable (A3): local codes and licensed practice decide where and how they may be used.
 
 -- 1. The candidates, and how sure the interactions of their components are.

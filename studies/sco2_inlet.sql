@@ -1,4 +1,4 @@
--- Questions to the store of studies/sco2_inlet.toml:   sqlite3 -box sco2_inlet.sqlite < studies/sco2_inlet.sql
+-- Questions to the store of studies/sco2_inlet.toml, with this study alone in it:   sqlite3 -box sco2_inlet.sqlite < studies/sco2_inlet.sql
 -- High pressure and an asphyxiant: plant is built to local codes by people licensed to do so.
 
 -- 1. What the columns mean.

@@ -1,4 +1,4 @@
--- Questions to the store of studies/screening.toml:   sqlite3 -box screening.sqlite < studies/screening.sql
+-- Questions to the store of studies/screening.toml, with this study alone in it:   sqlite3 -box screening.sqlite < studies/screening.sql
 -- Safety classes and cautions are the catalogue's; local codes and licensed practice decide what may be used where.
 
 -- Liquid and vapour of a fluid at one temperature side by side, with what the catalogue knows of the fluid. beta is the last axis:

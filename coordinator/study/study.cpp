@@ -29,9 +29,10 @@ constexpr std::size_t kLongestName = 64;
 
 /// A study's name becomes the name of a view in the store, and of a table with "points_" before it.
 void checkName(std::string_view name, Findings& findings) {
-  constexpr std::array<std::string_view, 11> kTables = {
-      "study", "quantity", "fluid",   "candidate", "reference_used", "composition", "composition_part",
-      "job",   "phase",    "outcome", "absence"};
+  constexpr std::array<std::string_view, 12> kTables = {
+      "store",     "study",          "quantity",    "fluid",
+      "candidate", "reference_used", "composition", "composition_part",
+      "job",       "phase",          "outcome",     "absence"};
   if (name.empty() || name.size() > kLongestName ||
       name.find_first_not_of("abcdefghijklmnopqrstuvwxyz0123456789_") != std::string_view::npos)
     findings.report(

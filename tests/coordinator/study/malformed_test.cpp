@@ -259,8 +259,8 @@ TEST(StudyNames, AreLowerCaseAndNotTheStoresOwn) {
     EXPECT_THAT(reading.diagnostics[0].message, HasSubstr("a-z, 0-9 and _"));
   }
   for (const char* const taken :
-       {"study", "quantity", "fluid", "candidate", "reference_used", "composition", "composition_part", "job",
-        "phase", "outcome", "absence", "points_x", "sqlite_x"}) {
+       {"store", "study", "quantity", "fluid", "candidate", "reference_used", "composition",
+        "composition_part", "job", "phase", "outcome", "absence", "points_x", "sqlite_x"}) {
     const auto reading = readStudy(taken, kFluid + kRest, library(), StudyLimits{});
     ASSERT_EQ(reading.diagnostics.size(), 1u) << taken;
     EXPECT_THAT(reading.diagnostics[0].message, HasSubstr("the store needs the name"));
