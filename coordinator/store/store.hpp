@@ -107,8 +107,9 @@ class Store {
   Status replaceJob(std::int64_t study, std::uint64_t job, std::span<const JobRecord> parts);
   Status landCrashed(std::int64_t study, const JobRecord& job, std::string_view worker);
 
- private:
   struct Impl;
+
+ private:
   explicit Store(std::unique_ptr<Impl> impl);
   std::unique_ptr<Impl> impl_;
 };
