@@ -40,7 +40,7 @@ constexpr std::array kTables = {
   M REAL NOT NULL,          -- kg/mol
   T_c REAL NOT NULL,        -- K; of the catalogue, used by the cubic equations
   p_c REAL NOT NULL,        -- Pa; likewise
-  acentric_factor REAL NOT NULL,
+  acentric_factor REAL,     -- NULL: not known, no cubic equation
   safety_class TEXT,        -- ISO 817; local codes and licensed practice decide
   gwp100 REAL,              -- kg CO2 a kg; NULL: not assessed
   gwp_source TEXT,

@@ -45,9 +45,9 @@ struct Fluid {
   std::string name, formula, cas;
   double M = 0;                           ///< kg/mol; of the reference file where there is one
   double T_critical = 0, p_critical = 0;  ///< K, Pa: of the catalogue, for the cubic equations
-  double acentric_factor = 0;
-  std::optional<double> T_boil, T_melt;  ///< K
-  std::string safety_class;              ///< "A1", "B2L", ... or as the catalogue says
+  std::optional<double> acentric_factor;  ///< of the catalogue; none: no cubic equation
+  std::optional<double> T_boil, T_melt;   ///< K
+  std::string safety_class;               ///< "A1", "B2L", ... or as the catalogue says
   std::optional<double> gwp100;
   std::string gwp_source;
   std::optional<double> odp;
