@@ -5,6 +5,7 @@
 
 #include "coordinator/study/units.hpp"
 #include "coordinator/study/wording.hpp"
+#include "thermo/fluids/spelling.hpp"
 
 namespace holdfast::coordinator {
 namespace {
@@ -42,8 +43,8 @@ Section::Section(const toml::table& table, std::string title, Words keys, Place 
   for (const auto& [key, value] : table)
     if (std::find(keys.begin(), keys.end(), key.str()) == keys.end())
       findings.report(placeOf(key.source()), "unknown key " + inQuotes(key.str()) +
-                                                 suggestion(key.str(), keys) + ": " + title_ + " has " +
-                                                 listed(keys));
+                                                 thermo::suggestion(key.str(), keys) + ": " + title_ +
+                                                 " has " + listed(keys));
 }
 
 Place Section::placeOfValue(std::string_view key) const {
@@ -105,8 +106,7 @@ std::optional<Placed<double>> Section::quantity(std::string_view key, std::strin
 std::optional<PlacedText> Section::choice(std::string_view key, Words words) const {
   auto found = text(key);
   if (!found || std::find(words.begin(), words.end(), found->value) != words.end()) return found;
-  std::string message =
-      "unknown " + std::string(key) + " " + inQuotes(found->value) + suggestion(found->value, words) + ": ";
+  std::string message = "unknown " + std::string(key) + " " + inQuotes(found->value) + ": ";
   for (const std::string_view word : words) {
     if (word.data() != words.front().data()) message += " | ";
     message += inQuotes(word);

@@ -1,4 +1,5 @@
-// How messages about a study are worded: quotes, suggestions, lists.
+// How messages about a study are worded: quotes, lists, large numbers. Suggestions:
+// thermo/fluids/spelling.hpp.
 #pragma once
 
 #include <cstdint>
@@ -13,9 +14,6 @@ std::string inQuotes(std::string_view text);
 
 /// `a, b and c`
 std::string listed(std::span<const std::string_view> words);
-
-/// ` (did you mean "near"?)` with the choice nearest to `word` in spelling; empty if none is near.
-std::string suggestion(std::string_view word, std::span<const std::string_view> choices);
 
 /// 1234567 -> "1 234 567"
 std::string grouped(std::uint64_t number);
