@@ -145,22 +145,20 @@ Status Store::Impl::landGrouped(std::span<const FinishedJob> jobs) {
     return Error{"jobs of more than " + std::to_string(kMostStudiesOfLanding) +
                  " studies cannot land at once"};
 
-  // Attached before the transaction begins, detached after it has ended: SQLite does neither inside one.
-  std::vector<std::pair<LandingGroup*, std::unique_ptr<AttachedImage>>> images;
-  for (auto& [study, group] : by_study) {
-    std::ranges::sort(group.jobs, {}, [](const FinishedJob* job) { return job->result->first_point(); });
-    auto image = imageOf(group);
-    if (!image) return image.error();
-    images.emplace_back(&group, std::make_unique<AttachedImage>(connection, images.size(), *image));
-  }
+  std::vector<std::unique_ptr<AttachedImage>> images;  // detached after the transaction has ended
   {
+    // Attached inside it: BEGIN IMMEDIATE would ask every attached database for its write lock.
     Transaction transaction(connection);
-    for (const auto& [group, image] : images) {
-      if (Status ledger = commitInLedger(connection, *group); !ledger) return ledger;
+    for (auto& [study, group] : by_study) {
+      if (Status ledger = commitInLedger(connection, group); !ledger) return ledger;
+      std::ranges::sort(group.jobs, {}, [](const FinishedJob* job) { return job->result->first_point(); });
+      auto image = imageOf(group);
+      if (!image) return image.error();
+      images.push_back(std::make_unique<AttachedImage>(connection, images.size(), *image));
       // Nothing but SELECT * between tables of equal columns: SQLite copies the records undecoded.
-      connection.execute("INSERT INTO main." + named(group->landing->table.name()) + " SELECT * FROM " +
-                         image->name() + ".rows");
-      insertAbsences(connection, *group);
+      connection.execute("INSERT INTO main." + named(group.landing->table.name()) + " SELECT * FROM " +
+                         images.back()->name() + ".rows");
+      insertAbsences(connection, group);
     }
     transaction.commit();
   }

@@ -125,26 +125,29 @@ std::string PointsTable::createImageTable() const {
   return sql + ") STRICT";
 }
 
+/// Labels are looked up row by row, not joined: what a question does not use is not looked up, and no
+/// question makes SQLite put the points into an inner loop, where it would build an index of them all.
 std::string PointsTable::createView(std::int64_t study) const {
-  const bool stores_M =
-      std::ranges::find(stored_, std::string("M"), &StoredColumn::written_as) != stored_.end();
-  std::string sql = "CREATE VIEW " + named(study_) +
-                    " AS SELECT\n"
-                    "  points.point,\n"
-                    "  candidate.label AS candidate,\n"
-                    "  points.composition,\n"
-                    "  (SELECT name FROM phase WHERE code = points.phase) AS phase,\n"
-                    "  (SELECT name FROM outcome WHERE code = points.outcome) AS outcome,\n";
-  if (!stores_M) sql += "  composition.M,\n";
-  sql += "  composition.gwp100";
+  const std::string of_composition = " FROM composition WHERE study = " + std::to_string(study) +
+                                     " AND composition.id = points.composition)";
+  std::string sql =
+      "CREATE VIEW " + named(study_) +
+      " AS SELECT\n"
+      "  point,\n"
+      "  (SELECT label FROM composition JOIN candidate ON candidate.study = composition.study AND "
+      "candidate.id = composition.candidate WHERE composition.study = " +
+      std::to_string(study) +
+      " AND composition.id = points.composition) AS candidate,\n"
+      "  composition,\n"
+      "  (SELECT name FROM phase WHERE code = points.phase) AS phase,\n"
+      "  (SELECT name FROM outcome WHERE code = points.outcome) AS outcome,\n";
+  if (std::ranges::find(stored_, "M", &StoredColumn::written_as) == stored_.end())
+    sql += "  (SELECT M" + of_composition + " AS M,\n";
+  sql += "  (SELECT gwp100" + of_composition + " AS gwp100";
   for (const StoredColumn& column : stored_) sql += ",\n  points." + named(column.name);
   for (const DerivedColumn& column : derived_)
     sql += ",\n  " + column.expression + " AS " + named(column.name);
-  const std::string id = std::to_string(study);
-  // LEFT JOIN: what a question does not use is not even looked up.
-  return sql + "\nFROM " + named(name_) + " AS points\n" +
-         "LEFT JOIN composition ON composition.study = " + id + " AND composition.id = points.composition\n" +
-         "LEFT JOIN candidate ON candidate.study = " + id + " AND candidate.id = composition.candidate";
+  return sql + "\nFROM " + named(name_) + " AS points";
 }
 
 }  // namespace holdfast::coordinator

@@ -23,9 +23,10 @@ char* put(char* at, std::uint64_t value, int width) {
   return at;
 }
 
-/// A variable-length integer: 7 bits a byte, most significant first ("Varint"). Here always below 2^63, and
-/// so at most nine bytes of seven bits.
+/// A variable-length integer: 7 bits a byte, most significant first ("Varint"). Here always below 2^56: eight
+/// bytes at most. (A ninth would carry eight bits.)
 int varintLength(std::uint64_t value) {
+  assert(value < std::uint64_t{1} << 56);
   return value == 0 ? 1 : (std::bit_width(value) + 6) / 7;
 }
 
@@ -72,7 +73,7 @@ constexpr std::size_t kLeadingColumns = 4;
 /// Their bodies at most: composition 8, phase 1, outcome 1.
 constexpr std::size_t kLeadingBody = 10;
 /// Payload length and rowid before a record, and the pointer to its cell.
-constexpr std::size_t kCellOverhead = 3 + 9 + 2;
+constexpr std::size_t kCellOverhead = 3 + 8 + 2;
 
 }  // namespace
 
@@ -177,7 +178,7 @@ void RecordImage::append(const ImageRows& rows) {
 /// One level of interior pages above `children`: in each, all children but the last stand in cells with
 /// their largest rowid, the last in the page header ("right-most pointer").
 std::vector<RecordImage::Child> RecordImage::interiorLevel(std::span<const Child> children) {
-  constexpr std::size_t kMostCell = 4 + 9, kMostChildren = (kPageSize - kInteriorHeader) / (kMostCell + 2);
+  constexpr std::size_t kMostCell = 4 + 8, kMostChildren = (kPageSize - kInteriorHeader) / (kMostCell + 2);
   std::vector<Child> parents;
   while (!children.empty()) {
     std::size_t taken = std::min(children.size(), kMostChildren);

@@ -21,7 +21,7 @@ struct RealColumn {
 
 /// Consecutive points on their way into the image.
 struct ImageRows {
-  std::uint64_t first_point = 0;
+  std::uint64_t first_point = 0;              ///< all points below 2^56
   std::span<const std::int64_t> composition;  ///< one a row
   std::span<const char> phase;                ///< one a row, 0 becomes NULL
   std::span<const char> outcome;              ///< one a row

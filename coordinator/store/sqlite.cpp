@@ -119,6 +119,14 @@ void Statement::run() {
   }
 }
 
+int Statement::columns() const {
+  return sqlite3_column_count(statement_);
+}
+
+bool Statement::isNull(int column) const {
+  return sqlite3_column_type(statement_, column) == SQLITE_NULL;
+}
+
 std::int64_t Statement::integer(int column) const {
   return sqlite3_column_int64(statement_, column);
 }

@@ -39,6 +39,8 @@ class Statement {
   bool row();  ///< steps: true if there is a row to read
   void run();  ///< steps to the end and is ready to be bound anew
 
+  int columns() const;
+  bool isNull(int column) const;
   std::int64_t integer(int column) const;
   double real(int column) const;
   std::string text(int column) const;
