@@ -12,6 +12,12 @@
 
 namespace holdfast::thermo {
 
+/// The two constants of integration, zero before a reference state is fixed.
+struct IdealConstants {
+  double energy = 0;   ///< K: h0/R and u0/R are larger by it
+  double entropy = 0;  ///< s0/R is larger by it
+};
+
 /// f(T) with its two constants. Immutable but for shifted().
 class IdealPart {
  public:
@@ -19,13 +25,8 @@ class IdealPart {
 
   const IdealHeatCapacity& heatCapacity() const { return cp0_; }
 
-  /// The same ideal part with u0/(R T) larger by energy/T and s0/R larger by `entropy`:
-  /// energy = Delta h / R in K, entropy = Delta s / R.
-  struct Shift {
-    double energy = 0;   ///< K
-    double entropy = 0;  ///< 1
-  };
-  IdealPart shifted(Shift by) const;
+  /// The same ideal part with its constants changed by these.
+  IdealPart shifted(IdealConstants by) const;
 
   /// Fills the ideal rows of `order` for lanes 0..paddedLanes(count)-1. T filled. Not blended: f of this
   /// component alone.
@@ -33,7 +34,7 @@ class IdealPart {
 
  private:
   IdealHeatCapacity cp0_;
-  Shift constants_;
+  IdealConstants constants_;
 };
 
 }  // namespace holdfast::thermo

@@ -6,8 +6,8 @@
 // is an integer), and a shared envelope exp(-delta^c), or a bell, is applied once to a whole group of terms
 // by the product rule.
 //
-// The kernel is compiled for AVX-512, AVX2 and plain x86-64 and chosen when the program starts; with explicit
-// fma and no contraction the three give the same bits.
+// The kernel is compiled for AVX-512, AVX2 and plain x86-64 and chosen when the program starts. AVX-512
+// and AVX2 give the same bits (explicit fused operations, no contraction); plain x86-64 rounds twice.
 #pragma once
 
 #include <memory>
