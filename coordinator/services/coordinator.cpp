@@ -68,6 +68,10 @@ Result<std::unique_ptr<Coordinator>> Coordinator::start(Store store,
     Study& study = made->adopt(std::move(record));
     study.jobs_failed = open.at(id).failed;
     if (study.record.state != StudyState::running) continue;
+    if (options.only && study.record.name != *options.only) {
+      study.record.state = StudyState::paused;  // in memory alone: whoever serves the store goes on with it
+      continue;
+    }
     if (identity != identityOf(*study.plan, *made->library_, buildIdentity())) {
       // Its rows would not be of one kind.
       spdlog::warn("study {} was begun by another build or with other fluid data: paused", study.record.name);

@@ -32,6 +32,7 @@ namespace holdfast::coordinator {
 struct CoordinatorOptions {
   QueuePolicy policy;
   StudyLimits limits;
+  std::optional<std::string> only;  ///< of the studies that run in the store, go on with this one alone
   std::size_t most_bytes_waiting = std::size_t{256} << 20;  ///< to land; beyond it nothing is leased
 };
 
@@ -97,6 +98,7 @@ class Coordinator {
     std::shared_ptr<WorkerPort> port;
     std::unordered_set<StudyId> knows;  ///< studies whose plan it has
     bool starved = false;               ///< wants work
+    bool leaving = false;               ///< has given back: wants none
   };
   struct Following {
     std::string name;

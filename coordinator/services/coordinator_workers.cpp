@@ -160,7 +160,10 @@ void Coordinator::hearGiveBack(WorkerId worker, const v1::GiveBack& given) {
     const std::lock_guard lock(mutex_);
     for (const std::uint64_t job : given.jobs()) queue_.giveBack(worker, given.lease(), job);
     // It is leaving: what it gave back is for the others.
-    if (const auto from = workers_.find(worker); from != workers_.end()) from->second.starved = false;
+    if (const auto from = workers_.find(worker); from != workers_.end()) {
+      from->second.leaving = true;
+      from->second.starved = false;
+    }
     topUpStarved(ports);
   }
   for (const auto& port : ports) port->flush();
@@ -181,7 +184,7 @@ void Coordinator::leave(WorkerId worker) {
 }
 
 void Coordinator::topUp(WorkerId id, Worker& worker, Ports& ports) {
-  for (;;) {
+  while (!worker.leaving) {
     worker.starved = true;
     if (ending_ || failure_ || writer_->bytesWaiting() > options_.most_bytes_waiting) return;
     const std::size_t most = leaseSize(queue_.waiting(), workers_.size(), worker.threads, queue_.held(id));

@@ -85,6 +85,9 @@ void Session::leave() {
     leaves_ = true;
     not_begun.swap(line_);
   }
+  v1::FromWorker nothing;  // to be leased no more, also if there is nothing to give back
+  nothing.mutable_give_back();
+  send(nothing);
   for (const JobPointer& job : not_begun) giveBack(*job);
   {
     std::unique_lock lock(mutex_);
