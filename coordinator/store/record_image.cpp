@@ -98,7 +98,7 @@ void RecordImage::begin(std::string_view create_table, std::size_t reals) {
 
 std::uint32_t RecordImage::newPage() {
   ++pages_;
-  if (bytes_.size() < pages_ * kPageSize) bytes_.resize(2 * pages_ * kPageSize);
+  if (bytes_.size() < std::size_t{pages_} * kPageSize) bytes_.resize(2 * std::size_t{pages_} * kPageSize);
   return pages_;
 }
 
@@ -251,7 +251,7 @@ std::span<char> RecordImage::finish() {
   std::vector<Child> level = leaves_;
   while (level.size() > 1) level = interiorLevel(level);
   writeFirstPage(level.front().page);
-  return {bytes_.data(), pages_ * kPageSize};
+  return {bytes_.data(), std::size_t{pages_} * kPageSize};
 }
 
 }  // namespace holdfast::coordinator

@@ -103,8 +103,9 @@ class Store {
   Status setState(std::int64_t study, StudyState state);
   /// Marks a job failed for good, with its reason.
   Status fail(std::int64_t study, const JobRecord& job);
-  /// Replaces a job by two halves (waiting), or, for a single point, lands it as `crashed`.
+  /// Replaces a waiting job by parts of it, in order, that cover its points; they wait.
   Status replaceJob(std::int64_t study, std::uint64_t job, std::span<const JobRecord> parts);
+  /// Lands a waiting job whose points killed worker after worker: outcome `crashed`, no numbers.
   Status landCrashed(std::int64_t study, const JobRecord& job, std::string_view worker);
 
   struct Impl;

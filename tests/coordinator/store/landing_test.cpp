@@ -99,6 +99,25 @@ TEST(Landing, JobsOfSeveralStudiesLandTogether) {
       "64|128");
 }
 
+// SQLite's write-ahead log starts anew once all of it has been moved into the file: it must not grow with the
+// study.
+TEST(Landing, TheWriteAheadLogStaysBounded) {
+  const Folder folder;
+  const std::filesystem::path file = folder / "x.sqlite";
+  std::vector<std::string> columns;
+  for (const char of : std::string("Tpvuhsag"))
+    for (const char by : std::string("Tpv"))
+      for (const char held : std::string("sh"))
+        if (of != by && of != held) columns.push_back(std::string("(d") + of + "/d" + by + ")_" + held);
+  const v1::Plan plan = planOf("x", 18'000, 8192, columns);  // 324,000 rows of about 350 bytes: 110 MB
+  Store store = openStore(file);
+  const StudyRecord study = addStudy(store, plan);
+  landAll(store, study, 4);
+  EXPECT_GT(std::filesystem::file_size(file), 50U << 20);
+  // The cap, 64 MiB, and the transaction that went beyond it.
+  EXPECT_LT(std::filesystem::file_size(file.string() + "-wal"), 80U << 20);
+}
+
 TEST(Landing, AnAxisThatIsCollectedTooIsStoredOnce) {
   const Folder folder;
   const std::filesystem::path file = folder / "x.sqlite";
