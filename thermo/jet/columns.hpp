@@ -24,6 +24,9 @@ enum class Absence : std::uint8_t {
 };
 std::string_view sentenceOf(Absence absence);
 
+/// Are both saturated phases of the states known?
+enum class Saturated { no, yes };
+
 /// What the columns of a tile are read from.
 struct ColumnSource {
   int count = 0;
@@ -36,7 +39,7 @@ struct ColumnSource {
   const double* z = nullptr;  ///< mole fractions of the candidate's components
 };
 
-/// Compiled columns of a study: which gradients, which Jacobians (each computed once), which scale for the
+/// Compiled columns of a study: which gradients, which Jacobians (two a partial), which scale for the
 /// basis.
 class Columns {
  public:
@@ -48,7 +51,7 @@ class Columns {
   int count() const;
 
   /// Why column c is absent for every state of this surface, or none. Decided by rank, never by a tolerance.
-  Absence absence(int column, Surface surface, bool saturated, Phase phase) const;
+  Absence absence(int column, Surface surface, Saturated saturated, Phase phase) const;
 
   /// Writes column c of lane k to out[c][k] for all columns and lanes; absent or singular ones are left out
   /// and reported: reasons[c][k] is Absence::none where out[c][k] is a finite number.
@@ -59,9 +62,13 @@ class Columns {
   void evaluate(const ColumnSource& source, Out& out) const;
 
  private:
-  std::vector<ColumnExpression> expressions_;
+  struct Column {
+    decltype(ColumnExpression::what) what;
+    int component =
+        -1;  ///< of x, y, z: index into the candidate's components; -1 if it has no such component
+  };
+  std::vector<Column> columns_;
   Basis basis_;
-  std::vector<std::string> designations_;
 };
 
 }  // namespace holdfast::thermo
