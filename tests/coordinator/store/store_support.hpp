@@ -182,7 +182,10 @@ inline std::string ask(Connection& connection, const std::string& question) {
   const int columns = statement.columns();
   while (statement.row()) {
     if (!answer.empty()) answer += '\n';
-    for (int c = 0; c < columns; ++c) answer += (c > 0 ? "|" : "") + statement.text(c);
+    for (int c = 0; c < columns; ++c) {
+      if (c > 0) answer += '|';
+      answer += statement.text(c);
+    }
   }
   return answer;
 }
