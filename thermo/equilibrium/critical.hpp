@@ -7,8 +7,10 @@
 
 namespace holdfast::thermo {
 
-/// Newton's method on (p_rho, p_rhorho) = 0 with exact third derivatives (and, for their slopes, the secant
-/// of the last steps), within a few percent of `start`. The Error says how far it came.
+/// The temperature at which the least slope (dp/drho)_T of an isotherm passes through zero, within 8 % of
+/// `start`, by exact slopes and bends. A start that already satisfies both conditions is kept: an equation
+/// built around its critical point, also where terms are not analytic there. The Error says where none was
+/// found.
 Result<CriticalPoint> findCriticalPoint(const Equation& pure, CriticalPoint start);
 
 }  // namespace holdfast::thermo
