@@ -1,9 +1,9 @@
 #include "thermo/equilibrium/critical.hpp"
 
-#include <fmt/format.h>
 #include <algorithm>
 #include <cmath>
 #include <optional>
+#include <sstream>
 
 namespace holdfast::thermo {
 namespace {
@@ -41,6 +41,13 @@ std::optional<Minimum> smallestSlope(const Equation& equation, double T, double 
   return std::nullopt;
 }
 
+Error notFound(CriticalPoint start, double T, double rho, double q) {
+  std::ostringstream text;
+  text << "no critical point of the equation near " << start.T << " K, " << start.rho << " mol/m3: came to "
+       << T << " K, " << rho << " mol/m3, dp/drho = " << q << " R T";
+  return Error{text.str()};
+}
+
 }  // namespace
 
 Result<CriticalPoint> findCriticalPoint(const Equation& pure, CriticalPoint start) {
@@ -55,9 +62,7 @@ Result<CriticalPoint> findCriticalPoint(const Equation& pure, CriticalPoint star
       centre = start.rho;
       minimum = smallestSlope(pure, T, centre * (1 - width), centre * (1 + width));
     }
-    if (!minimum || !(minimum->slope > 0))
-      return Error{fmt::format(
-          "no critical point: dp/drho has no minimum along {} K within 40 % of {} mol/m3", T, start.rho)};
+    if (!minimum || !(minimum->slope > 0)) return notFound(start, T, centre, last);
     centre = minimum->rho;
     last = minimum->q;
     const double step = std::clamp(-minimum->q / minimum->slope, -0.01, 0.01);
@@ -72,11 +77,10 @@ Result<CriticalPoint> findCriticalPoint(const Equation& pure, CriticalPoint star
       return CriticalPoint{T, centre * pure.gasConstant(0) * T * (1 + jet[r10][0]), centre};
     }
     T *= 1 + step;
-    if (std::abs(T / start.T - 1) > 0.05) break;
+    if (std::abs(T / start.T - 1) > 0.08) break;
     width = std::clamp(20 * std::sqrt(std::abs(step)), 1e-3, 0.4);
   }
-  return Error{fmt::format("no critical point within 5 % of {} K: came to {} K, {} mol/m3, p_rho/(R T) = {}",
-                           start.T, T, centre, last)};
+  return notFound(start, T, centre, last);
 }
 
 }  // namespace holdfast::thermo

@@ -1,9 +1,9 @@
 #include "thermo/equilibrium/saturation.hpp"
 
-#include <fmt/format.h>
 #include <algorithm>
 #include <cmath>
 #include <optional>
+#include <sstream>
 #include <vector>
 
 namespace holdfast::thermo {
@@ -50,6 +50,7 @@ Step newtonStep(double x, double y, const ResidualTile& liquid, const ResidualTi
 /// on which the equations bend is the distance of the two densities.
 constexpr double kLastStep = 1e-7;
 constexpr int kMostSteps = 40;
+constexpr double kPressureRounding = 1e-12;
 
 /// No step may bring the two densities to each other or run away.
 double damping(double x, double y, double dx, double dy) {
@@ -76,6 +77,13 @@ struct Lanes {
 };
 
 const Composition kPure{1.0};
+
+Error untraced(const ModelComponent& fluid, double T) {
+  std::ostringstream text;
+  text << fluid.designation << ": the saturation line could not be traced at " << T << " K (critical "
+       << fluid.critical.T << " K)";
+  return Error{text.str()};
+}
 
 }  // namespace
 
@@ -259,10 +267,7 @@ Result<SaturationCurve> SaturationCurve::trace(std::shared_ptr<const Model> mode
   traced->T_low = fluid.T_triple > 0 ? fluid.T_triple : fluid.validity.T_from;
   traced->T_high = kHighest * fluid.critical.T;
   if (!(traced->T_low > 0 && traced->T_low < kStart * fluid.critical.T))
-    return Error{
-        fmt::format("{}: no temperature to trace the saturation line from (triple point {} K, "
-                    "critical {} K)",
-                    fluid.designation, traced->T_low, fluid.critical.T)};
+    return untraced(fluid, traced->T_low);
   const double first = traced->variable(traced->T_high);
   const double last = traced->variable(traced->T_low);
   const double h = (last - first) / (kNodes - 1);
@@ -275,10 +280,7 @@ Result<SaturationCurve> SaturationCurve::trace(std::shared_ptr<const Model> mode
   const int middle = std::clamp(static_cast<int>((std::sqrt(1 - kStart) - first) / h), 0, kNodes - 1);
   traced->nodes.resize(kNodes);
   const auto guess = traced->firstGuess(T_of(middle));
-  const auto failed = [&](int i) {
-    return Error{fmt::format("{}: the saturation line could not be traced at {} K (critical {} K)",
-                             fluid.designation, T_of(i), fluid.critical.T)};
-  };
+  const auto failed = [&](int i) { return untraced(fluid, T_of(i)); };
   if (!guess) return failed(middle);
   const auto start = traced->node(s_of(middle), T_of(middle), *guess);
   if (!start) return failed(middle);
@@ -345,7 +347,9 @@ void SaturationCurve::atT(int count, const Row& T, SaturationTile& out) const {
 void SaturationCurve::atP(int count, const Row& p, SaturationTile& out) const {
   Lanes lanes;
   for (int k = 0; k < count; ++k) {
-    const bool inside = p[k] >= traced_->p_low && p[k] <= traced_->p_high;
+    // An end's pressure comes back from atT rounded: it still belongs to the line.
+    const bool inside =
+        p[k] >= traced_->p_low * (1 - kPressureRounding) && p[k] <= traced_->p_high * (1 + kPressureRounding);
     const double s = inside ? traced_->variableAt(std::log(p[k])) : traced_->nodes.front().s;
     const auto point = traced_->at(s);
     out.T[k] = traced_->T_critical * (1 - s * s);
