@@ -1,10 +1,10 @@
 // The coordinator is killed while it lands: what was acknowledged is there, nothing is there twice, the rest
 // waits.
 #include <gtest/gtest.h>
-#include <signal.h>
 #include <sys/wait.h>
 
 #include <chrono>
+#include <csignal>
 #include <random>
 #include <set>
 #include <thread>

@@ -32,7 +32,8 @@ TEST(Landing, EveryPointIsThereOnceWithItsAxisValuesAndColumns) {
     ASSERT_EQ(rows.isNull(2), point % 5 == 0);
     ASSERT_EQ(rows.integer(2), static_cast<std::int64_t>(point % 5));
     ASSERT_EQ(rows.integer(3), static_cast<std::int64_t>(point % 2));
-    ASSERT_EQ(rows.real(4), 250 + 0.25 * static_cast<double>(point % 150 / 3));
+    const std::uint64_t step_of_T = point % 150 / 3;
+    ASSERT_EQ(rows.real(4), 250 + 0.25 * static_cast<double>(step_of_T));
     ASSERT_EQ(rows.real(5), (std::array{1e5, 5e5, 20e5}[point % 3]));
     for (int c = 0; c < 4; ++c) {
       ASSERT_EQ(rows.isNull(6 + c), !presentAt(point, c));

@@ -52,7 +52,7 @@ TEST(Open, TellsAStoreOfALaterVersion) {
 TEST(Open, TakesAnEmptyFile) {
   const Folder folder;
   const std::filesystem::path file = folder / "x.sqlite";
-  std::ofstream{file};
+  const std::ofstream empty(file);
   EXPECT_EQ(refusal(file), "");
   EXPECT_EQ(ask(file, "PRAGMA application_id"), std::to_string(kApplicationId));
 }

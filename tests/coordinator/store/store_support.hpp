@@ -170,6 +170,7 @@ inline void landAll(Store& store, const StudyRecord& study, std::size_t at_once 
     for (std::size_t i = first; i < std::min(first + at_once, waiting.size()); ++i)
       results.push_back(resultOf(study.plan, waiting[i]));
     std::vector<FinishedJob> jobs;
+    jobs.reserve(results.size());
     for (const v1::JobResult& result : results) jobs.push_back(finished(study.id, result));
     expectSuccess(store.land(jobs));
   }
