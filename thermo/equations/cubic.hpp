@@ -46,8 +46,28 @@ class Cubic final : public Equation {
                                                               double T, double rho) const;
 
  private:
-  CubicFamily family_;
-  std::vector<CubicComponent> components_;
+  /// p = R T rho [1/(1 - y) - A y/Q], y = b rho, Q = 1 + u y + w y^2, A = a/(b R T), and the residual
+  /// energy's attraction is -A L(y) with L = [ln(1 + k1 y) - ln(1 + k2 y)]/(k1 - k2), (1 + k1 y)(1 + k2 y) =
+  /// Q.
+  struct Form {
+    double u, w, k1, k2;
+    double omega_a, omega_b, Z_critical;
+  };
+  static Form formOf(CubicFamily family);
+
+  /// sqrt(a_i/(R T)) = hot/sqrt(T) - cold; smooth also where alpha's root has passed zero (far above T_c).
+  struct Component {
+    double hot, cold;  ///< sqrt(m3 K/mol), sqrt(m3/mol)
+    double b;          ///< m3/mol
+  };
+  /// a/(b R T) and b at T, z.
+  struct Mixed {
+    double A, b;
+  };
+  Mixed mixed(const std::array<double, kMostComponents>& z, double T) const;
+
+  Form form_;
+  std::vector<Component> components_;
   std::vector<std::vector<double>> kij_;
 };
 
