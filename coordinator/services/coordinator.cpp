@@ -344,9 +344,10 @@ void Coordinator::watch() {
     for (auto& [id, study] : studies_)
       if (study.queued) study.meter.sample(now);
     Ports ports;
-    settle(queue_.expire(now), ports);
+    const Ports gone = expire(now);
     topUpStarved(ports);
     lock.unlock();
+    for (const auto& port : gone) port->finish({grpc::StatusCode::ABORTED, "the lease has expired"});
     for (const auto& port : ports) port->flush();
     tellFollowers();
     lock.lock();

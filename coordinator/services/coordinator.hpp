@@ -44,6 +44,8 @@ class WorkerPort {
   virtual void enqueue(v1::ToWorker message) = 0;
   /// Starts to send what is in line. Called without the coordinator's lock.
   virtual void flush() = 0;
+  /// Ends the stream after what is being sent. Called without the coordinator's lock.
+  virtual void finish(const grpc::Status& status) = 0;
 };
 
 /// Who wants to hear of a study's progress.
@@ -125,7 +127,7 @@ class Coordinator {
   void unqueue(Study& study, Ports& ports);
   void topUp(WorkerId id, Worker& worker, Ports& ports);
   void topUpStarved(Ports& ports);
-  void settle(const Losses& losses, Ports& ports);
+  Ports expire(Instant now);  ///< workers whose leases expired, let go; their streams have to be ended
   void decide(const Decision& decision);
   void finishIfDone(Study& study);
   v1::Progress progressOf(const Study& study) const;

@@ -176,7 +176,7 @@ void Coordinator::leave(WorkerId worker) {
     const auto gone = workers_.find(worker);
     if (gone == workers_.end()) return;
     spdlog::info("worker {} has left", gone->second.name);
-    settle(queue_.lose(worker), ports);
+    for (const Decision& decision : queue_.lose(worker).decisions) decide(decision);
     workers_.erase(worker);
     topUpStarved(ports);
   }
@@ -223,17 +223,20 @@ void Coordinator::topUpStarved(Ports& ports) {
     if (worker.starved) topUp(id, worker, ports);
 }
 
-void Coordinator::settle(const Losses& losses, Ports& ports) {
-  for (const LeaseOfWorker& lost : losses.leases) {
+/// A worker that was silent or hung is let go as a whole: if it still can, it joins again, with empty hands.
+Coordinator::Ports Coordinator::expire(Instant now) {
+  Ports gone;
+  const Losses expired = queue_.expire(now);
+  for (const Decision& decision : expired.decisions) decide(decision);
+  for (const LeaseOfWorker& lost : expired.leases) {
     const auto worker = workers_.find(lost.worker);
     if (worker == workers_.end()) continue;
-    v1::ToWorker message;
-    message.mutable_withdraw()->set_lease(lost.lease);
-    worker->second.port->enqueue(std::move(message));
-    worker->second.starved = true;
-    ports.push_back(worker->second.port);
+    spdlog::warn("worker {} has let its lease expire", worker->second.name);
+    for (const Decision& decision : queue_.lose(lost.worker).decisions) decide(decision);
+    gone.push_back(worker->second.port);
+    workers_.erase(worker);
   }
-  for (const Decision& decision : losses.decisions) decide(decision);
+  return gone;
 }
 
 void Coordinator::decide(const Decision& decision) {

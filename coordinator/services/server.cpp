@@ -20,6 +20,8 @@ namespace {
 constexpr int kMostMessageBytes = 8 << 20;  // a job's columns are at most 4 MiB
 constexpr unsigned kMostRequestsWaiting = 1024;
 constexpr std::size_t kCandidatesKept = 256;
+constexpr std::chrono::milliseconds kGrace{
+    200};  // for calls in hand when the server ends; streams never end by themselves
 
 bool isLoopback(std::string_view host) {
   if (host == "localhost" || host == "[::1]" || host == "::1") return true;
@@ -61,7 +63,7 @@ struct Server::Parts {
 Server::Server(std::unique_ptr<Parts> parts) : parts_(std::move(parts)) {}
 
 Server::~Server() {
-  parts_->server->Shutdown(std::chrono::system_clock::now() + std::chrono::seconds(1));
+  parts_->server->Shutdown(std::chrono::system_clock::now() + kGrace);
   parts_->server->Wait();
 }
 

@@ -24,12 +24,12 @@ class StreamPort final : public WorkerPort {
   void flush() override { next(Event::flushed); }
   void written() { next(Event::written); }
 
-  /// Ends the stream after the write that is under way. Only the first call counts.
-  void finish(grpc::Status status) {
+  /// Only the first call counts.
+  void finish(const grpc::Status& status) override {
     {
       const std::lock_guard lock(mutex_);
       if (end_) return;
-      end_ = std::move(status);
+      end_ = status;
       line_.clear();
     }
     next(Event::flushed);
