@@ -22,8 +22,12 @@ class WireTest : public testing::Test {
     tests::seedStore(folder / "store", tests::standInPlan("sweep", 5));
     auto store = Store::open(folder / "store");
     ASSERT_TRUE(store.ok());
-    coordinator = std::move(*Coordinator::start(std::move(*store), tests::library(), {}));
-    server = std::move(*Server::start(*coordinator, tests::library(), {"127.0.0.1:0", 1}));
+    auto started = Coordinator::start(std::move(*store), tests::library(), {});
+    ASSERT_TRUE(started.ok());
+    coordinator = std::move(*started);
+    auto served = Server::start(*coordinator, tests::library(), {"127.0.0.1:0", 1});
+    ASSERT_TRUE(served.ok());
+    server = std::move(*served);
     channel = worker::channelTo("127.0.0.1:" + std::to_string(server->port()));
   }
 

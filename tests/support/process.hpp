@@ -10,6 +10,7 @@
 #include <filesystem>
 #include <fstream>
 #include <iterator>
+#include <mutex>
 #include <regex>
 #include <stdexcept>
 #include <string>
@@ -48,10 +49,18 @@ class Process {
     }
   }
 
-  void signal(int which) const { kill(child_, which); }
+  /// Nothing happens if the program has ended and wait() has seen it. Safe beside wait().
+  void signal(int which) const {
+    const std::lock_guard lock(mutex_);
+    if (child_ > 0) kill(child_, which);  // kill(-1, ...) would mean everybody
+  }
 
   /// Waits for the end: exit status, or minus the signal that ended it.
   int wait() {
+    // First without reaping, so that the number is nobody else's while signal() may still use it.
+    siginfo_t info{};
+    waitid(P_PID, static_cast<id_t>(child_), &info, WEXITED | WNOWAIT);
+    const std::lock_guard lock(mutex_);
     int status = 0;
     waitpid(std::exchange(child_, -1), &status, 0);
     return WIFEXITED(status) ? WEXITSTATUS(status) : -WTERMSIG(status);
@@ -76,6 +85,7 @@ class Process {
 
  private:
   std::filesystem::path log_;
+  mutable std::mutex mutex_;
   pid_t child_ = -1;
 };
 

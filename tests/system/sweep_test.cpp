@@ -49,6 +49,7 @@ class SweepTest : public testing::Test {
     std::ofstream(folder / name) << text;
     return folder / name;
   }
+  /// Starts the program.
   Process run(std::vector<std::string> words, const std::string& log = "log") const {
     words.insert(words.begin(), program("holdfast"));
     return Process(std::move(words), folder / log);
