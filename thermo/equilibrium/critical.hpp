@@ -8,9 +8,7 @@
 namespace holdfast::thermo {
 
 /// The temperature at which the least slope (dp/drho)_T of an isotherm passes through zero, within 8 % of
-/// `start`, by exact slopes and bends. A start that already satisfies both conditions is kept: an equation
-/// built around its critical point, also where terms are not analytic there. The Error says where none was
-/// found.
+/// `start`, by exact slopes and bends. The Error says where none was found.
 Result<CriticalPoint> findCriticalPoint(const Equation& pure, CriticalPoint start);
 
 }  // namespace holdfast::thermo
