@@ -24,7 +24,7 @@ oracle::Residual residualOf(const std::vector<const Fluid*>& fluids, const std::
   std::vector<CubicComponent> components;
   std::vector<std::vector<double>> kij(fluids.size(), std::vector<double>(fluids.size(), 0.0));
   for (std::size_t i = 0; i < fluids.size(); ++i) {
-    components.push_back({fluids[i]->T_critical, fluids[i]->p_critical, fluids[i]->acentric_factor});
+    components.push_back({fluids[i]->T_critical, fluids[i]->p_critical, fluids[i]->acentric_factor.value_or(0)});
     for (std::size_t j = 0; j < fluids.size(); ++j)
       if (i != j && family == EquationFamily::peng_robinson)
         kij[i][j] = library().interaction(*fluids[i], *fluids[j]).kij;
