@@ -3,6 +3,7 @@
 // the machine.
 #include <gtest/gtest.h>
 
+#include <atomic>
 #include <memory>
 #include <random>
 #include <thread>
@@ -74,11 +75,13 @@ TEST(KillTest, PointThatKillsItsWorkersIsFoundAndTheRestIsDone) {
   while (stateOf(store) == "running") {
     ASSERT_LT(died, 60);
     auto worker = startWorker(coordinator.address, folder / "worker", kPoison);
+    std::atomic<bool> ended{false};
     std::thread watch([&] {
-      for (int i = 0; i < 1000 && stateOf(store) == "running"; ++i) std::this_thread::sleep_for(10ms);
+      while (!ended && stateOf(store) == "running") std::this_thread::sleep_for(10ms);
       worker->signal(SIGTERM);
     });
     const int status = worker->wait();
+    ended = true;
     watch.join();
     died += status == 3 ? 1 : 0;
   }
