@@ -19,7 +19,9 @@ struct Polynomial {
 
 /// The root between two places of opposite sign: Newton's steps, halving where one would leave the bracket.
 double rootBetween(const Polynomial& f, double low, double high) {
-  const bool rising = f.at(high) > 0;
+  if (f.at(low) == 0) return low;
+  if (f.at(high) == 0) return high;
+  const bool rising = f.at(low) < 0;
   double y = 0.5 * (low + high);
   for (int step = 0; step < 200; ++step) {
     const double value = f.at(y);
@@ -27,7 +29,7 @@ double rootBetween(const Polynomial& f, double low, double high) {
     ((value > 0) == rising ? high : low) = y;
     double next = y - value / f.slope(y);
     if (!(next > low && next < high)) next = 0.5 * (low + high);
-    if (std::abs(next - y) <= 1e-16 * y) return next;
+    if (std::abs(next - y) <= 3e-16 * y) return next;  // a unit in the last place
     y = next;
   }
   return y;
@@ -60,9 +62,9 @@ double Cubic::criticalCompressibility(CubicFamily family) {
 }
 
 Cubic::Cubic(CubicFamily family, std::vector<CubicComponent> components, std::vector<std::vector<double>> kij)
-    : form_(formOf(family)), kij_(std::move(kij)) {
-  assert(!components.empty() && components.size() <= kMostComponents && kij_.size() == components.size());
-  for (const CubicComponent& c : components) {
+    : form_(formOf(family)), given_(std::move(components)), kij_(std::move(kij)) {
+  assert(!given_.empty() && given_.size() <= kMostComponents && kij_.size() == given_.size());
+  for (const CubicComponent& c : given_) {
     const double omega = c.acentric_factor;
     const double m = family == CubicFamily::peng_robinson
                          ? 0.37464 + 1.54226 * omega - 0.26992 * omega * omega
@@ -150,6 +152,12 @@ Cubic::Mixed Cubic::mixed(const std::array<double, kMostComponents>& z, double T
     for (std::size_t j = 0; j < components_.size(); ++j) out.A += (1 - kij_[i][j]) * e[i] * e[j];
   out.A /= out.b;
   return out;
+}
+
+double Cubic::pressure(const std::array<double, kMostComponents>& z, double T, double rho) const {
+  const auto [A, b] = mixed(z, T);
+  const double y = b * rho;
+  return rho * kR * T * (1 / (1 - y) - A * y / (1 + y * (form_.u + form_.w * y)));
 }
 
 Cubic::Roots Cubic::densities(const std::array<double, kMostComponents>& z, double T, double p) const {

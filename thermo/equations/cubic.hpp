@@ -41,6 +41,12 @@ class Cubic final : public Equation {
   };
   Roots densities(const std::array<double, kMostComponents>& z, double T, double p) const;
 
+  /// p(T, rho) in Pa.
+  double pressure(const std::array<double, kMostComponents>& z, double T, double rho) const;
+
+  /// Critical constants of component i as given: starting values (Wilson) of phase equilibria.
+  const CubicComponent& given(int i) const { return given_[static_cast<std::size_t>(i)]; }
+
   /// ln of the fugacity coefficients at (T, rho, z), one a component.
   std::array<double, kMostComponents> logFugacityCoefficients(const std::array<double, kMostComponents>& z,
                                                               double T, double rho) const;
@@ -67,6 +73,7 @@ class Cubic final : public Equation {
   Mixed mixed(const std::array<double, kMostComponents>& z, double T) const;
 
   Form form_;
+  std::vector<CubicComponent> given_;
   std::vector<Component> components_;
   std::vector<std::vector<double>> kij_;
 };
