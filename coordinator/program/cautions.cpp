@@ -6,17 +6,15 @@
 
 namespace holdfast::coordinator {
 
-std::string cautionsOf(const v1::Plan& plan, const thermo::FluidLibrary& library) {
+std::string cautionsOf(std::span<const std::string> components, const thermo::FluidLibrary& library) {
   std::map<std::string, std::set<std::string>> fluids_by_caution;
-  for (const v1::PlannedCandidate& candidate : plan.candidates()) {
-    for (const std::string& component : candidate.components()) {
-      const auto fluid = library.find(component);
-      if (!fluid.ok()) continue;
-      std::istringstream cautions((*fluid)->caution);
-      for (std::string caution; std::getline(cautions, caution, ';');) {
-        caution.erase(0, caution.find_first_not_of(' '));
-        if (!caution.empty()) fluids_by_caution[caution].insert((*fluid)->label());
-      }
+  for (const std::string& component : components) {
+    const auto fluid = library.find(component);
+    if (!fluid.ok()) continue;
+    std::istringstream cautions((*fluid)->caution);
+    for (std::string caution; std::getline(cautions, caution, ';');) {
+      caution.erase(0, caution.find_first_not_of(' '));
+      if (!caution.empty()) fluids_by_caution[caution].insert((*fluid)->label());
     }
   }
   if (fluids_by_caution.empty()) return {};

@@ -10,9 +10,11 @@
 #include <memory>
 #include <string>
 #include <thread>
+#include <vector>
 
 #include "coordinator/program/cautions.hpp"
 #include "coordinator/program/commands.hpp"
+#include "coordinator/program/data.hpp"
 #include "coordinator/program/progress_line.hpp"
 #include "coordinator/program/signals.hpp"
 #include "coordinator/program/study_file.hpp"
@@ -97,17 +99,22 @@ v1::Progress work(Coordinator& coordinator, Server& server, const std::string& n
   }
 }
 
+std::vector<std::string> componentsOf(const v1::Plan& plan) {
+  std::vector<std::string> components;
+  for (const v1::PlannedCandidate& candidate : plan.candidates())
+    components.insert(components.end(), candidate.components().begin(), candidate.components().end());
+  return components;
+}
+
 int run(const RunOptions& options) {
   auto request = readStudyFile(options.study);
   if (!request.ok()) return complain(request.error().message, kWrong);
   request->set_replace(options.replace);
   const std::string& name = request->name();
 
-  const auto folder = thermo::FluidLibrary::findFolder();
-  if (!folder.ok()) return complain(folder.error().message, kFailed);
-  auto loaded = thermo::FluidLibrary::load(*folder);
+  const auto loaded = loadData();
   if (!loaded.ok()) return complain(loaded.error().message, kFailed);
-  const auto library = std::make_shared<const thermo::FluidLibrary>(std::move(*loaded));
+  const auto& library = *loaded;
 
   // Read before the store is opened: a wrong study leaves no file behind.
   const StudyReading reading = readStudy(name, request->text(), *library, StudyLimits{});
@@ -163,7 +170,7 @@ int run(const RunOptions& options) {
   std::cout << name << ": " << progress.points_done() << " points in " << file.string() << " ("
             << static_cast<std::uint64_t>(points / time.count()) << " points/s); "
             << describeOutcomes(progress) << "\n"
-            << cautionsOf(*reading.plan, *library);
+            << cautionsOf(componentsOf(*reading.plan), *library);
   if (progress.jobs_failed() > 0)
     return complain(
         std::to_string(progress.jobs_failed()) +

@@ -9,6 +9,7 @@
 #include <thread>
 
 #include "coordinator/program/commands.hpp"
+#include "coordinator/program/data.hpp"
 #include "coordinator/program/signals.hpp"
 #include "coordinator/services/coordinator.hpp"
 #include "coordinator/services/server.hpp"
@@ -33,11 +34,9 @@ int serve(const ServeOptions& options) {
   const Exposure exposure = options.insecure ? Exposure::insecure_allowed : Exposure::loopback_only;
   if (const Status allowed = checkListen(options.listen, exposure); !allowed.ok())
     return complain(allowed.error(), 2);
-  const auto folder = thermo::FluidLibrary::findFolder();
-  if (!folder.ok()) return complain(folder.error(), 1);
-  auto loaded = thermo::FluidLibrary::load(*folder);
+  const auto loaded = loadData();
   if (!loaded.ok()) return complain(loaded.error(), 1);
-  const auto library = std::make_shared<const thermo::FluidLibrary>(std::move(*loaded));
+  const auto& library = *loaded;
   auto store = Store::open(options.store);
   if (!store.ok()) return complain(store.error(), 1);
 

@@ -1,0 +1,28 @@
+// The answer of `evaluate` as text.
+#pragma once
+
+#include <string>
+#include <vector>
+
+#include "holdfast.pb.h"
+
+namespace holdfast::coordinator {
+
+/// A request, its reply, and the columns as they were written.
+struct Answers {
+  const v1::EvaluateRequest& request;
+  const v1::EvaluateReply& reply;
+  const std::vector<std::string>& columns;
+};
+
+/// A line a state for people, six digits.
+std::string asTable(const Answers& answers);
+/// RFC 4180, 17 significant digits; the header is the list of columns as written. Absent values are empty.
+std::string asCsv(const Answers& answers);
+/// RFC 8259: a list of objects, one a state; absent values are null.
+std::string asJson(const Answers& answers);
+
+/// A sentence for each state that has no numbers, and for each column that is absent somewhere.
+std::vector<std::string> whyNotComputed(const Answers& answers);
+
+}  // namespace holdfast::coordinator
