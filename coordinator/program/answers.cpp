@@ -124,6 +124,11 @@ std::vector<std::string> whyNotComputed(const Answers& answers) {
     out.push_back("state " + std::to_string(k + 1) + ": " + std::string(nameOf(found)) + ": " +
                   answers.reply.reason(k));
   }
+  return out;
+}
+
+std::vector<std::string> whyAbsent(const Answers& answers) {
+  std::vector<std::string> out;
   for (std::size_t c = 0; c < answers.columns.size(); ++c)
     if (const std::string& absence = answers.reply.absence(static_cast<int>(c)); !absence.empty())
       out.push_back(answers.columns[c] + ": " + absence);

@@ -22,7 +22,9 @@ std::string asCsv(const Answers& answers);
 /// RFC 8259: a list of objects, one a state; absent values are null.
 std::string asJson(const Answers& answers);
 
-/// A sentence for each state that has no numbers, and for each column that is absent somewhere.
+/// A sentence for each state that has no numbers.
 std::vector<std::string> whyNotComputed(const Answers& answers);
+/// A sentence for each column that does not exist at some state which was computed.
+std::vector<std::string> whyAbsent(const Answers& answers);
 
 }  // namespace holdfast::coordinator

@@ -205,8 +205,10 @@ int evaluate(const EvaluateOptions& options) {
   std::vector<std::string> components(request.components().begin(), request.components().end());
   if (const thermo::Blend* blend = (*library)->findBlend(components[0])) components = blend->components;
   std::cerr << cautionsOf(components, **library);
-  for (const std::string& reason : whyNotComputed(answers)) std::cerr << reason << "\n";
-  return whyNotComputed(answers).empty() ? 0 : 1;
+  const std::vector<std::string> failures = whyNotComputed(answers);
+  for (const std::string& reason : failures) std::cerr << reason << "\n";
+  for (const std::string& reason : whyAbsent(answers)) std::cerr << reason << "\n";
+  return failures.empty() ? 0 : 1;
 }
 
 }  // namespace

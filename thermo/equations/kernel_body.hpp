@@ -1,13 +1,13 @@
 // The kernel's one source. Letters as in jet.hpp: every row is theta_d^i theta_t^j alphar.
 //
-//   plain and damped terms   sums over tau^t, then over delta^d, then the shared envelope E = exp(-delta^c)
-//   by the product rule, with
-//                            theta_d E = e1 E, e1 = -c delta^c
-//   separable terms          F = n delta^d tau^t exp(g(delta) + h(tau)): rows are F D_i T_j, with D_1 = d +
-//   theta_d g, ... nonanalytic terms        F = exp(L), rows by the polynomials of Bell (1934) in the
-//   derivatives of L = b ln Delta + ln delta + ln psi.
-//                            Within 1e-10 of delta = 1, delta - 1 is taken as 1e-10: all powers of it that
-//                            stand there vanish.
+// - Plain and damped terms: sums over tau^t, then over delta^d, then the shared envelope E = exp(-delta^c) by
+//   the product rule, with theta_d E = e1 E, e1 = -c delta^c.
+// - Separable terms: F = n delta^d tau^t exp(g(delta) + h(tau)); rows are F D_i T_j, D_1 = d + theta_d g, ...
+// - Nonanalytic terms: F = exp(L), rows by the polynomials of Bell (1934) in the derivatives of
+//   L = b ln Delta + ln delta + ln psi. Within 1e-10 of delta = 1, delta - 1 is taken as 1e-10, so that rows
+//   stay finite. At the critical point itself the published form has none: its second derivative in tau
+//   diverges (cv of water and carbon dioxide), and what stands here is a large number set by that 1e-10.
+//
 // Terms whose exponent lies below -200 count as zero, so that a whole vector of them may be left out without
 // a lane noticing.
 #pragma once

@@ -33,8 +33,7 @@ class PowerList {
 };
 
 struct EquationPlan {
-  static constexpr int kMostPowers =
-      96;  ///< of each base; more is refused at construction (the published equations need up to 40)
+  static constexpr int kMostPowers = 96;  ///< of each base; the loader refuses files that could need more
 
   /// n tau^t with its theta_t derivatives: factor[j] = n t^j.
   struct TauTerm {

@@ -107,6 +107,13 @@ void readEquation(const Reader& read, const toml::table& table, ReferenceEquatio
   out.bell = terms<D::Bell>(read.rows<7>(table, "bell"));
   out.inverse_bell = terms<D::InverseBell>(read.rows<8>(table, "inverse_bell"));
   out.nonanalytic = terms<D::Nonanalytic>(read.rows<8>(table, "nonanalytic"));
+  // The kernel has room for 96 powers of tau and of delta: one or two a term, and those they are multiplied
+  // from.
+  constexpr std::size_t kMostTerms = 80;
+  const std::size_t count = out.plain.size() + out.damped.size() + 2 * out.double_damped.size() +
+                            out.bell.size() + out.inverse_bell.size() + out.nonanalytic.size();
+  if (count == 0) read.fail(table, "helmholtz", "an equation has terms");
+  if (count > kMostTerms) read.fail(table, "helmholtz", "more than " + std::to_string(kMostTerms) + " terms");
 }
 
 void readIdeal(const Reader& read, const toml::table& table, ReferenceFluid& out) {

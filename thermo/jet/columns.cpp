@@ -56,9 +56,11 @@ std::string_view sentenceOf(Absence absence) {
     case Absence::dependent_variables:
       return "its variables depend on each other in such a state: there is no such derivative";
     case Absence::needs_saturated_state:
-      return "defined along the saturation line only: give the state by beta";
-    case Absence::needs_two_phases:
-      return "defined with liquid and vapour together only";
+      return "defined on the saturation line and between its two sides only: give the state by beta";
+    case Absence::phase_not_there:
+      return "the state has no such phase";
+    case Absence::no_such_component:
+      return "the candidate has no such component";
     case Absence::singular:
       return "singular at the state: its denominator vanishes (critical point, limit of stability)";
   }
@@ -96,11 +98,13 @@ Absence Columns::absence(int column, Surface surface, Saturated saturated, Phase
     case Quantity::kappa_T:
       return two_phase ? Absence::dependent_variables : Absence::none;
     case Quantity::beta:
-      return two_phase || saturated == Saturated::yes ? Absence::none : Absence::needs_two_phases;
+      return two_phase || saturated == Saturated::yes ? Absence::none : Absence::needs_saturated_state;
     case Quantity::x:
-      return two_phase || phase == Phase::liquid ? Absence::none : Absence::needs_two_phases;
-    case Quantity::y:
-      return two_phase || phase == Phase::vapour ? Absence::none : Absence::needs_two_phases;
+    case Quantity::y: {
+      if (columns_[static_cast<std::size_t>(column)].component < 0) return Absence::no_such_component;
+      const Phase own = quantity == Quantity::x ? Phase::liquid : Phase::vapour;
+      return two_phase || phase == own ? Absence::none : Absence::phase_not_there;
+    }
     default:
       return Absence::none;
   }
@@ -119,12 +123,9 @@ class Reader {
     return X.by_lnT[k] * Z.by_lnrho[k] - X.by_lnrho[k] * Z.by_lnT[k];
   }
 
-  /// (dx/dy)_z in molar units into `out`. The caller has seen that it exists.
+  /// (dx/dy)_z in molar units into `out`. The caller has seen that it exists. Where x and z depend on each
+  /// other their gradients are parallel: the numerator is zero without rounding.
   void partial(Base x, Base y, Base z, double scale, Row& out) const {
-    if (dependent(x, z, on_.surface)) {
-      out.lane.fill(0.0);
-      return;
-    }
     const Gradient& X = on_[x];
     const Gradient& Y = on_[y];
     const Gradient& Z = on_[z];

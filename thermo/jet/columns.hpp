@@ -18,8 +18,10 @@ enum class Absence : std::uint8_t {
   none = 0,
   dependent_variables,    ///< the variables depend on each other there (v and rho; T, p and g in two phases):
                           ///< no such derivative
-  needs_saturated_state,  ///< along the saturation line only, and the state is not given by beta
-  needs_two_phases,       ///< beta, x or y of a state of one phase
+  needs_saturated_state,  ///< along the saturation line, or beta, and the state is of one phase and not on
+                          ///< that line
+  phase_not_there,        ///< x of a vapour, y of a liquid
+  no_such_component,      ///< x, y of a component that this candidate does not have
   singular,               ///< the denominator vanishes at the state (critical point)
 };
 std::string_view sentenceOf(Absence absence);
@@ -44,7 +46,7 @@ struct ColumnSource {
 class Columns {
  public:
   /// Component texts of x[..], y[..], z[..] are looked up in `designations`; an unknown one: such a column is
-  /// absent (needs_two_phases for x and y, and 0 for z) — a study may name a component that only some
+  /// absent (no_such_component for x and y, and 0 for z) — a study may name a component that only some
   /// candidates have.
   Columns(std::vector<ColumnExpression> expressions, Basis basis, std::vector<std::string> designations);
 

@@ -109,7 +109,7 @@ class Parser {
                "; " + std::string(kPartialTakes));
     out.base = static_cast<Base>(*found);
     out.text = symbol;
-    if (at_ < text_.size() && text_[at_] == '\'') {
+    if (peek('\'')) {
       ++at_;
       out.side = Side::liquid;
       out.text += "'";
