@@ -10,6 +10,7 @@
 #include <random>
 
 #include "tests/support/oracle.hpp"
+#include "tests/support/theta_rows.hpp"
 #include "thermo/equations/kernel.hpp"
 #include "thermo/equations/reference.hpp"
 #include "thermo/fluids/csv.hpp"
@@ -156,25 +157,6 @@ TEST(References, ReproduceEveryPrintedCheckState) {
   EXPECT_GT(compared, 100);
 }
 
-/// theta_d^i theta_t^j of a series around (T, rho) from its plain derivatives.
-std::array<Real, kResidualRows> thetaRows(const oracle::Series& s, const Real& T, const Real& rho) {
-  // theta_d f = rho f_rho as a series again; theta_t f = -T f_T
-  const auto d = [&](const oracle::Series& f) { return oracle::Series::density(rho) * f.byRho(); };
-  const auto t = [&](const oracle::Series& f) { return -(oracle::Series::temperature(T) * f.byT()); };
-  std::array<Real, kResidualRows> out;
-  out[r00] = s.value();
-  out[r10] = d(s).value();
-  out[r01] = t(s).value();
-  out[r20] = d(d(s)).value();
-  out[r11] = t(d(s)).value();
-  out[r02] = t(t(s)).value();
-  out[r30] = d(d(d(s))).value();
-  out[r21] = t(d(d(s))).value();
-  out[r12] = t(t(d(s))).value();
-  out[r03] = t(t(t(s))).value();
-  return out;
-}
-
 // Every kind of term, to third order. The yardstick is the row itself or, where terms cancel, 1e-13 of the
 // largest row: rounding of the powers tau^t (t up to 50) alone is some 1e-14.
 TEST(References, RowsOfAllSeventyEquationsAgreeWith50Digits) {
@@ -188,8 +170,8 @@ TEST(References, RowsOfAllSeventyEquationsAgreeWith50Digits) {
       const double rho = fluid.rho_critical * (k < 2 ? std::pow(10.0, -12 + 6 * k) : 2.9 * unit(random));
       const Jet jet = jetAt(fluid, T, rho);
       const auto rows =
-          thetaRows(truth(oracle::Series::temperature(Real(T)), oracle::Series::density(Real(rho))), Real(T),
-                    Real(rho));
+          oracle::thetaRows(truth(oracle::Series::temperature(Real(T)), oracle::Series::density(Real(rho))),
+                            Real(T), Real(rho));
       Real largest = 0;
       for (const Real& row : rows) largest = std::max(largest, Real(abs(row)));
       // Three terms of R-123 have no density in front; they cancel with their damped twins in thin gas, to
