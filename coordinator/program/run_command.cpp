@@ -127,6 +127,7 @@ int run(const RunOptions& options) {
   auto store = Store::open(file);
   if (!store.ok()) return complain(store.error().message, kFailed);
 
+  spdlog::set_level(spdlog::level::warn);  // the progress line tells what is going on
   countSignals();
   CoordinatorOptions coordinator_options;
   coordinator_options.only = name;

@@ -124,7 +124,9 @@ inline std::vector<Row> query(const std::filesystem::path& file, const std::stri
   sqlite3* database = nullptr;
   sqlite3_stmt* statement = nullptr;
   std::vector<Row> rows;
+  // The store may be in the middle of being made: wait.
   if (sqlite3_open_v2(file.c_str(), &database, SQLITE_OPEN_READWRITE, nullptr) != SQLITE_OK ||
+      sqlite3_busy_timeout(database, 10'000) != SQLITE_OK ||
       sqlite3_prepare_v2(database, sql.c_str(), -1, &statement, nullptr) != SQLITE_OK) {
     const std::string wrong = sqlite3_errmsg(database);
     sqlite3_close(database);

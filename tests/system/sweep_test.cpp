@@ -135,7 +135,7 @@ TEST_F(SweepTest, RowsAreTheSameWithOneTwoAndThreeWorkersOverTcp) {
 
 TEST_F(SweepTest, CtrlCPausesAndRunGoesOn) {
   std::string text = kMap;
-  text.replace(text.find("count = 61"), 10, "count = 6000");
+  text.replace(text.find("count = 61"), 10, "count = 30000");
   const auto study = write("propane.toml", text);
   const auto store = folder / "store";
   Process first = run({"run", study.string(), "--store", store.string(), "--threads", "1"});
@@ -154,7 +154,7 @@ TEST_F(SweepTest, CtrlCPausesAndRunGoesOn) {
   EXPECT_EQ(again.wait(), 0) << again.output();
   EXPECT_THAT(again.output(), HasSubstr("going on"));
   EXPECT_EQ(query(store, "SELECT count(*), count(DISTINCT point), max(point) FROM points_propane"),
-            (std::vector<Row>{{"240000", "240000", "239999"}}));
+            (std::vector<Row>{{"1200000", "1200000", "1199999"}}));
   Process over = run({"run", study.string(), "--store", store.string()});
   EXPECT_EQ(over.wait(), 0);
   EXPECT_THAT(over.output(), HasSubstr("is complete"));
