@@ -40,8 +40,9 @@ Status Store::setState(std::int64_t study, StudyState state) {
     if (connection.changes() != 1) return Error{"the store has no study of number " + std::to_string(study)};
     // A study that no longer runs leaves the file whole: it can be copied alone. Readers that are at work
     // keep the log; it goes when the store is closed.
-    if (state != StudyState::running)
-      sqlite3_wal_checkpoint_v2(connection.handle(), "main", SQLITE_CHECKPOINT_TRUNCATE, nullptr, nullptr);
+    if (state == StudyState::running) return success();
+    const auto alone = impl_->checkpointer.holdOff();
+    sqlite3_wal_checkpoint_v2(connection.handle(), "main", SQLITE_CHECKPOINT_TRUNCATE, nullptr, nullptr);
     return success();
   });
 }

@@ -9,7 +9,9 @@ namespace holdfast::coordinator {
 namespace {
 
 constexpr int kPageSize = 16384;
-/// The write-ahead log is moved into the file from this size on ...
+/// The write-ahead log is moved into the file by a thread of its own each time it has grown by this much ...
+constexpr int kWakePages = (8 << 20) / kPageSize;
+/// ... the writer moves what is left, so that the log starts anew, from this size on ...
 constexpr int kLogPages = (64 << 20) / kPageSize;
 /// ... and where readers keep it from being started anew, they are waited for from this size on.
 constexpr int kForcedLogPages = (512 << 20) / kPageSize;
@@ -83,11 +85,13 @@ Status Store::Impl::prepare(const std::filesystem::path& file) {
                  ", this one knows " + std::to_string(kStoreVersion) +
                  "); use that version, or name another file"};
 
-  // Page size counts only before the first page is written. FULL: a commit is on the disk before it is
-  // acknowledged. What is dropped need not be overwritten with zeros.
+  // Page size counts only before the first page is written. NORMAL: a commit outlives the end of the program
+  // however it ends; after a loss of power the last commits may be undone as wholes, rows and marks alike,
+  // and their jobs wait again. Checkpoints, and so the end of a study, are on the disk. What is dropped need
+  // not be overwritten with zeros.
   connection.execute("PRAGMA page_size = " + std::to_string(kPageSize));
   connection.execute(
-      "PRAGMA journal_mode = WAL; PRAGMA synchronous = FULL; PRAGMA secure_delete = OFF;"
+      "PRAGMA journal_mode = WAL; PRAGMA synchronous = NORMAL; PRAGMA secure_delete = OFF;"
       "PRAGMA wal_autocheckpoint = 0; PRAGMA journal_size_limit = 67108864");
   sqlite3_wal_hook(connection.handle(), noteLogPages, this);
   forced_from = kForcedLogPages;
@@ -101,7 +105,13 @@ Status Store::Impl::prepare(const std::filesystem::path& file) {
 }
 
 void Store::Impl::keepLogBounded() {
+  if (log_pages < woken_at) woken_at = 0;
+  if (log_pages - woken_at >= kWakePages) {
+    woken_at = log_pages;
+    checkpointer.wake();
+  }
   if (log_pages < kLogPages) return;
+  const auto alone = checkpointer.holdOff();
   sqlite3* const database = connection.handle();
   int left = 0, moved = 0;
   // Failure is no loss: the log stays and the next landing tries again.

@@ -6,6 +6,7 @@
 #include <memory>
 #include <string>
 
+#include "coordinator/store/checkpointer.hpp"
 #include "coordinator/store/place.hpp"
 #include "coordinator/store/points_table.hpp"
 #include "coordinator/store/record_image.hpp"
@@ -29,7 +30,8 @@ struct LandingStudy {
 };
 
 struct Store::Impl {
-  Impl(const std::filesystem::path& file, StoreLock taken) : lock(std::move(taken)), connection(file) {}
+  Impl(const std::filesystem::path& file, StoreLock taken)
+      : lock(std::move(taken)), connection(file), checkpointer(file) {}
 
   /// Pragmas, schema, version. Fails if the file is not a store.
   Status prepare(const std::filesystem::path& file);
@@ -41,9 +43,11 @@ struct Store::Impl {
 
   StoreLock lock;  // let go after the connection is closed
   Connection connection;
+  Checkpointer checkpointer;  // ends before the connection: the last one to close moves what is left
   std::map<std::int64_t, std::unique_ptr<LandingStudy>> studies;
   std::uint64_t openings = 0;
   int log_pages = 0;    ///< in the write-ahead log after the last commit
+  int woken_at = 0;     ///< pages when the checkpointer was last woken
   int forced_from = 0;  ///< pages from which readers are waited for
 };
 
