@@ -1,7 +1,5 @@
 #include "thermo/fluids/library.hpp"
 
-#include <openssl/evp.h>
-
 #include <algorithm>
 #include <cstdlib>
 #include <fstream>
@@ -9,6 +7,7 @@
 #include <memory>
 
 #include "thermo/fluids/csv.hpp"
+#include "thermo/fluids/digest.hpp"
 #include "thermo/fluids/reference_file.hpp"
 #include "thermo/fluids/spelling.hpp"
 #include "thermo/fluids/tables.hpp"
@@ -18,28 +17,6 @@ namespace holdfast::thermo {
 namespace {
 
 namespace fs = std::filesystem;
-
-/// SHA-256 (FIPS 180-4) over what is added, as hexadecimal digits.
-class Digest {
- public:
-  Digest() : context_(EVP_MD_CTX_new(), EVP_MD_CTX_free) {
-    EVP_DigestInit_ex(context_.get(), EVP_sha256(), nullptr);
-  }
-  void add(std::string_view bytes) { EVP_DigestUpdate(context_.get(), bytes.data(), bytes.size()); }
-  std::string finish() {
-    std::array<unsigned char, 32> bytes;
-    EVP_DigestFinal_ex(context_.get(), bytes.data(), nullptr);
-    std::string out;
-    for (const unsigned char byte : bytes) {
-      out += "0123456789abcdef"[byte >> 4U];
-      out += "0123456789abcdef"[byte & 15U];
-    }
-    return out;
-  }
-
- private:
-  std::unique_ptr<EVP_MD_CTX, decltype(&EVP_MD_CTX_free)> context_;
-};
 
 /// Files below a folder by their path relative to it, in name order, with their bytes.
 using Files = std::map<std::string, std::string>;
