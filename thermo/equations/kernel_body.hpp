@@ -168,45 +168,75 @@ inline std::array<V, 4> powerOfDistance(V log_x, V y, double k) {
   return {P, P * factor[1], P * factor[2], P * factor[3]};
 }
 
+/// ln Delta, Delta = theta^2 + B |delta - 1|^(2a) with theta = 1 - tau + A |delta - 1|^(1/beta), and its
+/// theta derivatives. Terms of one equation mostly share it.
+struct LogDistance {
+  V value, l10, l01, l20, l11, l02, l30, l21, l12, l03;
+};
+
+template <int N, typename Term>
+LogDistance logDistance(const Term& term, V tau, V log_x, V y) {
+  const auto P = powerOfDistance(log_x, y, 1 / (2 * term.beta));
+  const auto Q = powerOfDistance(log_x, y, term.a);
+  const V theta = fma(P[0], term.A, 1.0 - tau);
+  // theta_t^j theta = -tau for every j >= 1; theta has no mixed derivatives.
+  const V D = fma(theta, theta, term.B * Q[0]);
+  const V k = 1.0 / D;
+  const V p1 = term.A * P[1];
+  const V p2 = term.A * P[2];
+  const V d10 = (2.0 * theta * p1 + term.B * Q[1]) * k;
+  const V d01 = -2.0 * theta * tau * k;
+  const V d20 = (2.0 * (p1 * p1 + theta * p2) + term.B * Q[2]) * k;
+  const V d11 = -2.0 * p1 * tau * k;
+  const V d02 = 2.0 * tau * (tau - theta) * k;
+  LogDistance out{};
+  out.value = log(D);
+  out.l10 = d10;
+  out.l01 = d01;
+  out.l20 = d20 - d10 * d10;
+  out.l11 = d11 - d10 * d01;
+  out.l02 = d02 - d01 * d01;
+  if constexpr (N >= 3) {
+    const V p3 = term.A * P[3];
+    const V d30 = (2.0 * (3.0 * p1 * p2 + theta * p3) + term.B * Q[3]) * k;
+    const V d21 = -2.0 * p2 * tau * k;
+    const V d12 = d11;
+    const V d03 = 2.0 * tau * (3.0 * tau - theta) * k;
+    out.l30 = d30 - 3.0 * d10 * d20 + 2.0 * d10 * d10 * d10;
+    out.l21 = d21 - d11 * d10 - out.l20 * d01 - d10 * out.l11;
+    out.l12 = d12 - d11 * d01 - out.l02 * d10 - d01 * out.l11;
+    out.l03 = d03 - 3.0 * d01 * d02 + 2.0 * d01 * d01 * d01;
+  }
+  return out;
+}
+
 template <int N>
 void addNonanalytic(const EquationPlan& plan, V tau, V delta, Rows<N>& sum) {
+  if (plan.nonanalytic.empty()) return;
+  V x1 = delta - 1.0;
+  const V size = select(x1 < V{}, -x1, x1);
+  x1 = select(size < all(1e-10), all(1e-10), x1);
+  const V x = x1 * x1;
+  const V t1 = tau - 1.0;
+  const auto* computed = plan.nonanalytic.data();  // the term that `l` stands for
+  LogDistance l;
+  bool known = false;
   for (const auto& term : plan.nonanalytic) {
-    V x1 = delta - 1.0;
-    const V size = select(x1 < V{}, -x1, x1);
-    x1 = select(size < all(1e-10), all(1e-10), x1);
-    const V x = x1 * x1;
-    const V t1 = tau - 1.0;
     const V log_psi = -term.C * x - term.D * (t1 * t1);
     const I negligible = log_psi < all(kNegligible);
     if (everywhere(negligible)) continue;
-    const V log_x = log(x);
-    const V y = delta / x1;
-    const auto P = powerOfDistance(log_x, y, 1 / (2 * term.beta));
-    const auto Q = powerOfDistance(log_x, y, term.a);
-    const V theta = fma(P[0], term.A, -t1);
-    // Delta = theta^2 + B x^a; theta_t^j theta = -tau for every j >= 1; theta has no mixed derivatives.
-    const V D = fma(theta, theta, term.B * Q[0]);
-    const V k = 1.0 / D;
-    const V p1 = term.A * P[1];
-    const V p2 = term.A * P[2];
-    const V p3 = term.A * P[3];
-    const V d10 = (2.0 * theta * p1 + term.B * Q[1]) * k;
-    const V d01 = -2.0 * theta * tau * k;
-    const V d20 = (2.0 * (p1 * p1 + theta * p2) + term.B * Q[2]) * k;
-    const V d11 = -2.0 * p1 * tau * k;
-    const V d02 = 2.0 * tau * (tau - theta) * k;
-    // b ln Delta
-    const V l10 = d10;
-    const V l01 = d01;
-    const V l20 = d20 - d10 * d10;
-    const V l11 = d11 - d10 * d01;
-    const V l02 = d02 - d01 * d01;
-    const V L10 = term.b * l10 + (1.0 - 2.0 * term.C * delta * (delta - 1.0));
-    const V L01 = term.b * l01 - 2.0 * term.D * tau * t1;
-    const V L20 = term.b * l20 - 2.0 * term.C * delta * (2.0 * delta - 1.0);
-    const V L11 = term.b * l11;
-    const V L02 = term.b * l02 - 2.0 * term.D * tau * (2.0 * tau - 1.0);
-    V F = term.n * delta * exp(fma(log(D), term.b, log_psi));
+    if (!known || term.beta != computed->beta || term.a != computed->a || term.A != computed->A ||
+        term.B != computed->B) {
+      l = logDistance<N>(term, tau, log(x), delta / x1);
+      computed = &term;
+      known = true;
+    }
+    const V L10 = term.b * l.l10 + (1.0 - 2.0 * term.C * delta * (delta - 1.0));
+    const V L01 = term.b * l.l01 - 2.0 * term.D * tau * t1;
+    const V L20 = term.b * l.l20 - 2.0 * term.C * delta * (2.0 * delta - 1.0);
+    const V L11 = term.b * l.l11;
+    const V L02 = term.b * l.l02 - 2.0 * term.D * tau * (2.0 * tau - 1.0);
+    V F = term.n * delta * exp(fma(l.value, term.b, log_psi));
     F = select(negligible, V{}, F);
     sum[r00] += F;
     if constexpr (N >= 1) {
@@ -219,18 +249,10 @@ void addNonanalytic(const EquationPlan& plan, V tau, V delta, Rows<N>& sum) {
       sum[r02] = fma(F, fma(L01, L01, L02), sum[r02]);
     }
     if constexpr (N >= 3) {
-      const V d30 = (2.0 * (3.0 * p1 * p2 + theta * p3) + term.B * Q[3]) * k;
-      const V d21 = -2.0 * p2 * tau * k;
-      const V d12 = d11;
-      const V d03 = 2.0 * tau * (3.0 * tau - theta) * k;
-      const V l30 = d30 - 3.0 * d10 * d20 + 2.0 * d10 * d10 * d10;
-      const V l21 = d21 - d11 * d10 - l20 * l01 - l10 * l11;
-      const V l12 = d12 - d11 * d01 - l02 * l10 - l01 * l11;
-      const V l03 = d03 - 3.0 * d01 * d02 + 2.0 * d01 * d01 * d01;
-      const V L30 = term.b * l30 - 2.0 * term.C * delta * (4.0 * delta - 1.0);
-      const V L21 = term.b * l21;
-      const V L12 = term.b * l12;
-      const V L03 = term.b * l03 - 2.0 * term.D * tau * (4.0 * tau - 1.0);
+      const V L30 = term.b * l.l30 - 2.0 * term.C * delta * (4.0 * delta - 1.0);
+      const V L21 = term.b * l.l21;
+      const V L12 = term.b * l.l12;
+      const V L03 = term.b * l.l03 - 2.0 * term.D * tau * (4.0 * tau - 1.0);
       sum[r30] = fma(F, L30 + 3.0 * L20 * L10 + L10 * L10 * L10, sum[r30]);
       sum[r21] = fma(F, L21 + 2.0 * L11 * L10 + L20 * L01 + L10 * L10 * L01, sum[r21]);
       sum[r12] = fma(F, L12 + 2.0 * L11 * L01 + L02 * L10 + L01 * L01 * L10, sum[r12]);

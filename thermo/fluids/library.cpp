@@ -118,8 +118,12 @@ Result<fs::path> FluidLibrary::findFolder() {
     if (fs::exists(fs::path(chosen) / "catalogue.csv")) return fs::path(chosen);
     return Error{"HOLDFAST_FLUIDS names " + std::string(chosen) + ", where there is no catalogue.csv"};
   }
-  for (const char* folder : {HOLDFAST_FLUIDS_BUILD, HOLDFAST_FLUIDS_INSTALLED})
-    if (fs::exists(fs::path(folder) / "catalogue.csv")) return fs::path(folder);
+  // An installed program finds the data beside its own folder, wherever it was put.
+  std::error_code unknown;
+  const fs::path program = fs::read_symlink("/proc/self/exe", unknown);
+  for (const fs::path& folder : {program.parent_path().parent_path() / HOLDFAST_FLUIDS_BESIDE,
+                                 fs::path(HOLDFAST_FLUIDS_BUILD), fs::path(HOLDFAST_FLUIDS_INSTALLED)})
+    if (fs::exists(folder / "catalogue.csv")) return folder;
   return Error{"the fluid data is not found; set HOLDFAST_FLUIDS to the folder that holds catalogue.csv"};
 }
 

@@ -86,7 +86,8 @@ class FluidLibrary {
   /// Reads all files below `folder`. The error names file, line and field.
   static Result<FluidLibrary> load(const std::filesystem::path& folder);
 
-  /// Where the data is: $HOLDFAST_FLUIDS, else the installed folder, else the one of the build tree.
+  /// Where the data is: $HOLDFAST_FLUIDS, else installed beside the program, else the build tree's, else the
+  /// folder of the configured install prefix.
   static Result<std::filesystem::path> findFolder();
 
   const std::vector<Fluid>& fluids() const { return fluids_; }

@@ -8,7 +8,10 @@
 
 #include <string>
 #include <thread>
+#include <variant>
 #include <vector>
+
+#include "thermo/jet/partial.hpp"
 
 namespace holdfast::coordinator {
 namespace {
@@ -105,6 +108,31 @@ TEST(Units, AreSafeFromManyThreads) {
     });
   for (auto& thread : threads) thread.join();
   EXPECT_THAT(wrong, ::testing::Each(0));
+}
+
+// The store's units are for programs as well as people: UDUNITS-2 reads each of them.
+TEST(Units, OfEveryColumnAreThoseOfUdunits) {
+  const std::vector<std::string> bases = {"T", "p", "v", "rho", "u", "h", "s", "a", "g"};
+  std::vector<std::string> texts = {"cv",    "cp",      "w",       "Z",       "beta",
+                                    "mu_JT", "alpha_v", "kappa_T", "kappa_s", "M"};
+  texts.insert(texts.end(), bases.begin(), bases.end());
+  for (const std::string& x : bases)
+    for (const std::string& y : bases)
+      if (x != y)
+        texts.push_back("(d" + x + "/d" + y + ")_" +
+                        (x != "T" && y != "T"   ? "T"
+                         : x != "p" && y != "p" ? "p"
+                                                : "v"));
+  for (const std::string& text : texts) {
+    const auto parsed = thermo::parseColumn(text);
+    ASSERT_TRUE(std::holds_alternative<thermo::ColumnExpression>(parsed)) << text;
+    for (const auto basis : {thermo::Basis::mass, thermo::Basis::molar}) {
+      const std::string unit = thermo::unitOf(std::get<thermo::ColumnExpression>(parsed), basis);
+      const auto value = parseQuantity("2 " + unit, unit);
+      ASSERT_TRUE(value.ok()) << text << " in " << unit;
+      EXPECT_DOUBLE_EQ(*value, 2);
+    }
+  }
 }
 
 }  // namespace
