@@ -257,7 +257,7 @@ double SaturationCurve::Traced::variableAt(double log_p) const {
 
 SaturationCurve::SaturationCurve(std::shared_ptr<const Traced> traced) : traced_(std::move(traced)) {}
 
-Result<SaturationCurve> SaturationCurve::trace(std::shared_ptr<const Model> model) {
+Result<SaturationCurve> SaturationCurve::trace(const std::shared_ptr<const Model>& model) {
   auto traced = std::make_shared<Traced>();
   const ModelComponent& fluid = model->component(0);
   if (!model->isPure()) return Error{"a saturation line is of a pure fluid"};

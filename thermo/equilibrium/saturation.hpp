@@ -24,7 +24,7 @@ struct SaturationTile {
 class SaturationCurve {
  public:
   /// Traces the line once (about a hundred solves) and keeps smooth starting values from it.
-  static Result<SaturationCurve> trace(std::shared_ptr<const Model> model);
+  static Result<SaturationCurve> trace(const std::shared_ptr<const Model>& model);
 
   double lowestT() const;   ///< K: where the tracing began (triple point)
   double highestT() const;  ///< K: at least 0.9999 T_c

@@ -87,6 +87,7 @@ Term termOf(const std::array<double, N>& row, std::index_sequence<I...>) {
 template <class Term, std::size_t N>
 std::vector<Term> terms(const std::vector<std::array<double, N>>& rows) {
   std::vector<Term> out;
+  out.reserve(rows.size());
   for (const auto& row : rows) out.push_back(termOf<Term>(row, std::make_index_sequence<N>()));
   return out;
 }

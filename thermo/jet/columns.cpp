@@ -1,6 +1,7 @@
 #include "thermo/jet/columns.hpp"
 
 #include <cmath>
+#include <utility>
 
 namespace holdfast::thermo {
 
@@ -70,10 +71,10 @@ std::string_view sentenceOf(Absence absence) {
 Columns::Columns(std::vector<ColumnExpression> expressions, Basis basis,
                  std::vector<std::string> designations)
     : basis_(basis) {
-  for (const ColumnExpression& expression : expressions) {
+  for (ColumnExpression& expression : expressions) {
     Column column;
-    column.what = expression.what;
-    if (const auto* quantity = std::get_if<QuantityColumn>(&expression.what); quantity != nullptr)
+    column.what = std::move(expression.what);
+    if (const auto* quantity = std::get_if<QuantityColumn>(&column.what); quantity != nullptr)
       for (std::size_t i = 0; i < designations.size(); ++i)
         if (designations[i] == quantity->component) column.component = static_cast<int>(i);
     columns_.push_back(std::move(column));
