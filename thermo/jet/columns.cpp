@@ -1,5 +1,6 @@
 #include "thermo/jet/columns.hpp"
 
+#include <cassert>
 #include <cmath>
 #include <utility>
 
@@ -145,6 +146,7 @@ class Reader {
   }
 
   void alongSaturation(const SaturationPartial& partial, double scale, Row& out) const {
+    assert(source_.liquid != nullptr && source_.vapour != nullptr);  // absence() lets no other state in
     const GradientTile& side = partial.side == Side::liquid ? *source_.liquid : *source_.vapour;
     for (int k = 0; k < source_.count; ++k) {
       const double P = slope(k);
