@@ -66,7 +66,8 @@ TEST(States, DensityComesBackFromItsPressureForEveryReferenceEquation) {
                                      << " " << sentenceOf(out.reason[static_cast<std::size_t>(k)]);
       double slope = 0;
       pressureAt(*candidate, input.first[k], rho[static_cast<std::size_t>(k)], slope);
-      // 4e-15 of p/(rho R T) and of its terms, over the slope: the error of p itself.
+      // p of a cold liquid is a difference of terms some fifty times larger than rho R T, each rounded: 2e-13
+      // of rho R T, over the slope.
       EXPECT_NEAR(out.rho[k] / rho[static_cast<std::size_t>(k)], 1, 2e-13 / std::min(slope, 1.0))
           << fluid.label() << " T=" << input.first[k] << " p=" << input.second[k];
     }
