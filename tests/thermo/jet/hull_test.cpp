@@ -46,8 +46,8 @@ class HullTest : public testing::TestWithParam<double> {
   const oracle::Fluid fluid_ = vanDerWaalsTruth();
 
   Sides sides(const Real& T) const {
-    // Starting densities: the leading terms of both branches around the critical point, v_r = 1 -+ 2 sqrt(1 -
-    // T_r).
+    // Starting densities, from the expansion of both branches around the critical point: with t = 1 - T_r,
+    // rho_r = 1 + 2 t/5 +- 2 sqrt(t).
     const double tr = GetParam();
     const double middle = 1 + 0.4 * (1 - tr);
     const double half = 2 * std::sqrt(1 - tr);
